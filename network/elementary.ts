@@ -57,7 +57,7 @@ export function log(x: number): number {
 export function exp(x: number): number {
   if (x > 709.782712893384) return Infinity;
   if (x < -745.1332191019411) return 0;
-  if (x !== x) return x;
+  if (Number.isNaN(x)) return x;
   const k = Math.floor(x * INV_LN2 + 0.5);
   const high = x - k * LN2_HIGH;
   const low = k * LN2_LOW;
