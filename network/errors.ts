@@ -76,3 +76,12 @@ function editDistance(a: string, b: string): number {
   }
   return rows[a.length][b.length];
 }
+
+/** The work failed though the request was right (exit status 1): shown without a stack. */
+export class RunError extends Error {
+  override readonly name = 'RunError';
+
+  constructor(place: string, problem: string, remedy: string) {
+    super(`${place}: ${problem}; ${remedy}`);
+  }
+}

@@ -5,14 +5,14 @@
  * curvature, group shares, an arm's own settings). Completing a completed study changes nothing.
  */
 import { defined, overridePreferences } from './check.js';
-import type {
-  ArmFile,
-  PartialPreferencesFile,
-  PreferencesFile,
-  ReferenceFile,
-  ShockFile,
+import {
+  type ArmFile,
+  type PartialPreferencesFile,
+  type PreferencesFile,
+  type ReferenceFile,
+  type ShockFile,
   StudyFile,
-  TechnologyFile,
+  type TechnologyFile,
 } from './schema.js';
 
 /** A group with everything filled in; share is absent only when a households file says who is in it. */
@@ -46,7 +46,7 @@ export function completeStudy(file: StudyFile): Study {
       ? {}
       : { preferences: completeOverride(file.preferences, preferences, group.preferences) }),
   }));
-  return {
+  const complete = {
     ...file,
     seed: String(file.seed),
     population: {
@@ -61,6 +61,8 @@ export function completeStudy(file: StudyFile): Study {
         : { ...arm, preferences: completeOverride(file.preferences, preferences, arm.preferences) },
     ),
   };
+  // parsing again puts every key in the schema's order, so that a completed study is written the same way every time
+  return StudyFile.parse(complete) as Study;
 }
 
 /** Milestone curvature is the curvature unless given. */

@@ -8,7 +8,7 @@ import type { z } from 'zod';
 import { InputError, type Problem } from '../../network/errors.js';
 import { checkStudy } from './check.js';
 import { completeStudy, type Study } from './complete.js';
-import { type Path, problemsOf, type StudyProblem, valueAt } from './problems.js';
+import { type Path, pathText, problemsOf, type StudyProblem, valueAt } from './problems.js';
 import { NOT_YET, StudyFile } from './schema.js';
 
 /** A study that may run, and where its parts stand in the file. */
@@ -83,7 +83,7 @@ export function parseStudy(text: string, file: string): ParsedStudy {
   const parsed = StudyFile.safeParse(rest);
   if (!parsed.success) {
     const problems = parsed.error.issues.flatMap((issue) => problemsOf(issue, rest, (path) => keysAt(path, rest)));
-    return raise([...refused, ...problems]);
+    return raise([...refused, ...withoutEchoes(problems)]);
   }
   const problems = [...refused, ...checkStudy(parsed.data)];
   if (problems.length > 0) return raise(problems);
@@ -93,6 +93,12 @@ export function parseStudy(text: string, file: string): ParsedStudy {
 /** The YAML of a complete study, as a results folder keeps it. */
 export function studyText(study: Study): string {
   return stringify(study, { lineWidth: 0, aliasDuplicateObjects: false });
+}
+
+/** A mistyped key also leaves the right one missing: the second complaint would only distract. */
+function withoutEchoes(problems: readonly StudyProblem[]): StudyProblem[] {
+  const meant = new Set(problems.filter((found) => found.meant !== undefined).map((found) => pathText(found.meant!)));
+  return problems.filter((found) => found.code !== 'missing-key' || !meant.has(pathText(found.path)));
 }
 
 /** Takes out what this version does not simulate yet; what would do nothing is let pass. */

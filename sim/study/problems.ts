@@ -15,6 +15,8 @@ export interface StudyProblem {
   readonly path: Path;
   /** True when the problem lies with the key at `path`, not with its value. */
   readonly atKey?: boolean;
+  /** The key that a mistyped one probably stands for. */
+  readonly meant?: Path;
   readonly problem: string;
   readonly remedy: string;
 }
@@ -73,6 +75,7 @@ export function problemsOf(issue: Issue, raw: unknown, keysAt: (path: Path) => r
           code: 'unknown-key',
           path: [...path, key],
           atKey: true,
+          ...(guess === undefined ? {} : { meant: [...path, guess] }),
           problem: `unknown key '${key}' in ${where}`,
           remedy: guess === undefined ? `use one of ${keys.join(', ')}` : `did you mean '${guess}'?`,
         };

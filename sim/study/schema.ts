@@ -327,7 +327,7 @@ const withinGroup = note(
 const Degrees = z.discriminatedUnion('kind', [
   z.strictObject({ kind: z.literal('poisson'), mean: positive }),
   z.strictObject({ kind: z.literal('lognormal'), mean: positive, sd_log: z.number().min(0).max(3) }),
-  z.strictObject({ kind: z.literal('file'), file: filePath, column: z.string().min(1).optional() }),
+  z.strictObject({ kind: z.literal('file'), path: filePath, column: z.string().min(1).optional() }),
 ]);
 
 const BuiltNetwork = z.discriminatedUnion('kind', [
