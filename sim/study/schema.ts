@@ -223,7 +223,7 @@ const Places = z.union([
 ]);
 
 const Group = z.strictObject({
-  name,
+  name: note(name, 'Name', 'What the group is called in tables and on screen.'),
   share: note(share, 'Share', 'Share of households in this group; the shares sum to 1.').optional(),
   relative_wealth: note(
     positive,
@@ -281,7 +281,11 @@ const Wealth = z.strictObject({
     'Share of all wealth held by each of equally many households, poorest first; they sum to 1.',
   ).optional(),
   sample: note(
-    z.strictObject({ file: filePath, column: z.string().min(1), weight: z.string().min(1).optional() }),
+    z.strictObject({
+      file: note(filePath, 'File', 'A CSV with one row a surveyed household.'),
+      column: note(z.string().min(1), 'Column', 'The column that holds wealth.'),
+      weight: note(z.string().min(1), 'Weight', 'The column that holds survey weights; equal unless given.').optional(),
+    }),
     'Sample',
     'Wealth resampled from a survey column, with survey weights if named.',
   ).optional(),
@@ -325,9 +329,22 @@ const withinGroup = note(
 );
 
 const Degrees = z.discriminatedUnion('kind', [
-  z.strictObject({ kind: z.literal('poisson'), mean: positive }),
-  z.strictObject({ kind: z.literal('lognormal'), mean: positive, sd_log: z.number().min(0).max(3) }),
-  z.strictObject({ kind: z.literal('file'), path: filePath, column: z.string().min(1).optional() }),
+  z.strictObject({ kind: z.literal('poisson'), mean: meanDegree }),
+  z.strictObject({
+    kind: z.literal('lognormal'),
+    mean: meanDegree,
+    sd_log: note(
+      z.number().min(0).max(3),
+      'Spread of ties',
+      'Standard deviation of the log of the number of ties.',
+      '0.3 to 1',
+    ),
+  }),
+  z.strictObject({
+    kind: z.literal('file'),
+    path: note(filePath, 'File', 'A CSV with the number of ties of each household, one row a household.'),
+    column: note(z.string().min(1), 'Column', 'The column that holds the number of ties.').optional(),
+  }),
 ]);
 
 const BuiltNetwork = z.discriminatedUnion('kind', [
@@ -410,7 +427,7 @@ const DerivedNetwork = z.strictObject({
 const Network = z.union([BuiltNetwork, DerivedNetwork]);
 
 const Arm = z.strictObject({
-  name,
+  name: note(name, 'Name', 'What the arm is called in tables and on screen.'),
   network: note(Network, 'Network', 'How this arm’s ties are arranged.'),
   technology: note(PartialTechnology, 'Own technology', 'What this arm changes of the technology.').optional(),
   shock: note(PartialShock, 'Own shock', 'What this arm changes of the shock.').optional(),
