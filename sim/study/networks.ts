@@ -4,11 +4,13 @@
  * An arm that derives from another starts from that arm's ties of the same replicate, so everything but the
  * mixing is held fixed.
  */
-import { build } from '../../network/build/build.js';
+import { build, type Given } from '../../network/build/build.js';
+import { reached } from '../../network/build/reached.js';
 import { InputError } from '../../network/errors.js';
 import type { Ties } from '../../network/graph.js';
 import { mix } from '../../network/mix/mix.js';
 import { stream } from '../random/stream.js';
+import type { Study } from './complete.js';
 import type { Population } from './population.js';
 import type { NetworkReport } from './record.js';
 import type { Prepared } from './replicate.js';
@@ -35,11 +37,83 @@ export function buildNetworks(
   const visit = (arm: ArmFile): ArmNetwork => {
     let network = built.get(arm.name);
     if (network === undefined) {
-      network = atArm(arm, replicate, () => armNetwork(prepared, population, replicate, arm, visit));
+      network = atArm(prepared.study, arm, () => armNetwork(prepared, population, replicate, arm, visit));
       built.set(arm.name, network);
     }
     return network;
   };
   for (const arm of arms) visit(arm);
   return built;
+}
+
+function armNetwork(
+  prepared: Prepared,
+  population: Population,
+  replicate: number,
+  arm: ArmFile,
+  visit: (arm: ArmFile) => ArmNetwork,
+): ArmNetwork {
+  const { study, inputs } = prepared;
+  const { labels } = population;
+  const { network } = arm;
+  if ('from' in network) {
+    const source = visit(study.arms.find((other) => other.name === network.from)!);
+    if (network.mixing === undefined) return source;
+    const mixed = mix(source.ties, network.mixing, labels, stream(study.seed, replicate, `mixing:${arm.name}`));
+    return {
+      ties: mixed.ties,
+      report: {
+        kind: 'mixed',
+        asked: { from: network.from, ...network.mixing },
+        reached: { ...reached(mixed.ties, labels) },
+        mixing: {
+          target: mixed.target ?? 'share',
+          asked: mixed.asked,
+          reached: mixed.reached,
+          tried: mixed.tried,
+          accepted: mixed.accepted,
+          outOfReach: mixed.outOfReach,
+        },
+      },
+    };
+  }
+  const given: Given = {
+    ...(network.kind === 'file' ? { ties: inputs.ties[network.path]! } : {}),
+    ...(network.kind === 'configuration' && network.degrees.kind === 'file'
+      ? { degrees: inputs.degrees[network.degrees.path]! }
+      : {}),
+  };
+  const ties = build(network, labels, stream(study.seed, replicate, `network:${arm.name}`), given);
+  const { kind, ...asked } = network;
+  return {
+    ties,
+    report: { kind, asked: flat(asked), reached: { ...reached(ties, labels) } },
+  };
+}
+
+/** Numbers and words of what was asked, inner groups joined with a dot. */
+function flat(object: object, prefix = ''): Record<string, number | string | boolean> {
+  const out: Record<string, number | string | boolean> = {};
+  for (const [key, value] of Object.entries(object)) {
+    if (value === undefined) continue;
+    if (typeof value === 'object' && value !== null) Object.assign(out, flat(value, `${prefix}${key}.`));
+    else out[prefix + key] = value as number | string | boolean;
+  }
+  return out;
+}
+
+/** Gives errors of builders and mixing their place in the study: `arms[1].network.mixing.value`. */
+function atArm(study: Study, arm: ArmFile, work: () => ArmNetwork): ArmNetwork {
+  try {
+    return work();
+  } catch (error) {
+    if (!(error instanceof InputError)) throw error;
+    const at = `arms[${study.arms.indexOf(arm)}].network`;
+    throw new InputError(
+      error.problems.map((found) => ({
+        ...found,
+        place: found.place.startsWith('arms[') ? found.place : `${at}.${found.place.replace(/^network\.?/, '')}`,
+      })),
+    );
+  }
 }

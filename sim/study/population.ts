@@ -5,7 +5,7 @@
  * household, part of it common to the place, read through the quantile function of the shape asked for; then
  * multiplied by the group's relative wealth and rescaled to the mean (files.md). Ties are networks.ts.
  */
-import { log, pow, exp } from '../../network/elementary.js';
+import { exp, log, pow } from '../../network/elementary.js';
 import type { Labels } from '../../network/graph.js';
 import { type Draws, PURPOSE } from '../random/draws.js';
 import { normalCdf, normalQuantile } from '../random/normal.js';
@@ -146,7 +146,13 @@ export function apportion(n: number, weight: Float64Array, least = 1): Uint32Arr
 }
 
 /** Wealth before groups and rescaling. */
-function drawWealth(wealth: WealthFile, inputs: Inputs, place: Uint32Array, places: number, draws: Draws): Float64Array {
+function drawWealth(
+  wealth: WealthFile,
+  inputs: Inputs,
+  place: Uint32Array,
+  places: number,
+  draws: Draws,
+): Float64Array {
   const n = place.length;
   const latent = new Float64Array(n);
   draws.normals(PURPOSE.wealth, 0, latent);
@@ -247,9 +253,7 @@ export function splitHistogram(shares: readonly number[]): (u: number, upper: nu
     const within = u * k - g;
     if (high <= low) return low;
     const below = (high - m) / (high - low);
-    return within < below
-      ? low + ((m - low) * within) / below
-      : m + ((high - m) * (within - below)) / (1 - below);
+    return within < below ? low + ((m - low) * within) / below : m + ((high - m) * (within - below)) / (1 - below);
   };
 }
 

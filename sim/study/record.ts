@@ -41,7 +41,7 @@ export interface ArmRecord {
 /** What was asked of an arm's network and what was reached. */
 export interface NetworkReport {
   readonly kind: string;
-  readonly asked: Readonly<Record<string, number | string>>;
+  readonly asked: Readonly<Record<string, number | string | boolean | undefined>>;
   readonly reached: Readonly<Record<string, number>>;
   /** Swap mixing only. */
   readonly mixing?: {

@@ -3,7 +3,6 @@
  *
  * Pure: no files, no clock. Hands each generation to a recorder and keeps nothing.
  */
-import type { Ties } from '../../network/graph.js';
 import { RunError } from '../../network/errors.js';
 import { createEngine, makeGeneration } from '../model/generation.js';
 import { Draws } from '../random/draws.js';
@@ -43,7 +42,7 @@ export function simulate(prepared: Prepared, replicate: number, recorder: Record
   arms.forEach((arm) => {
     const model = compileModel(study, arm, population.groupNames);
     const households = compileHouseholds(study, arm, population);
-    const { ties, report } = networks.get(arm.name) as { ties: Ties; report: ReportOf };
+    const { ties, report } = networks.get(arm.name)!;
     const engine = createEngine(model, households, ties);
     const own = milestonesOf(columns, model.milestones.length);
     recorder.armStarts({
@@ -73,7 +72,7 @@ export function simulate(prepared: Prepared, replicate: number, recorder: Record
         ties,
         tiesChanged: t === 0,
       });
-      if (model.persistence > 0) own.aspirations.forEach((column, m) => inherited[m]!.set(column));
+      if (model.persistence > 0) own.aspirations.forEach((column, m) => void inherited[m]!.set(column));
       parentWealth.set(own.wealth);
       own.wealth.set(own.childWealth);
     }
@@ -88,8 +87,6 @@ export function simulate(prepared: Prepared, replicate: number, recorder: Record
     recorder.armEnds();
   });
 }
-
-type ReportOf = Parameters<Recorder['armStarts']>[0]['network'];
 
 /** The shared columns with as many aspirations as the arm has milestones. */
 function milestonesOf(columns: ReturnType<typeof makeGeneration>, milestones: number): typeof columns {
