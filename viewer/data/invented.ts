@@ -150,6 +150,7 @@ export function invented(n: number, degree = 8, generations = 8): Source {
     shown: [0],
     replicates: 1,
     generations,
+    every: 1,
     households: n,
     groupNames: ['lowland', 'upland'],
     placeNames: null,

@@ -30,6 +30,8 @@ export interface StudyInfo {
   readonly replicates: number;
   /** Decisions t = 0 … generations − 1; generation `generations` is the last children. */
   readonly generations: number;
+  /** The panel holds generations 0, every, 2 every … */
+  readonly every: number;
   readonly households: number;
   readonly groupNames: readonly string[];
   readonly placeNames: readonly string[] | null;
