@@ -69,6 +69,7 @@ export interface ChiSquareTest {
 
 /** Values of β that an Anderson–Rubin test does not reject; bounds are null where it has none. */
 export interface ConfidenceSet {
+  readonly term: string;
   readonly level: number;
   readonly kind: 'interval' | 'two rays' | 'pieces' | 'whole line' | 'empty';
   readonly intervals: readonly (readonly [number | null, number | null])[];

@@ -132,6 +132,7 @@ export function andersonRubin(
   const show = (x: number | null): string => (x === null ? '∞' : x.toPrecision(4));
   if (bounds.length === 0) {
     return {
+      term,
       level,
       kind: 'empty',
       intervals: [],
@@ -141,6 +142,7 @@ export function andersonRubin(
   }
   if (edges.length === 0) {
     return {
+      term,
       level,
       kind: 'whole line',
       intervals: bounds,
@@ -150,6 +152,7 @@ export function andersonRubin(
   }
   if (bounds.length === 1 && bounds[0][0] !== null && bounds[0][1] !== null) {
     return {
+      term,
       level,
       kind: 'interval',
       intervals: bounds,
@@ -160,6 +163,7 @@ export function andersonRubin(
   const pieces = bounds.map(([low, high]) => `${low === null ? '−' : ''}${show(low)} to ${show(high)}`).join(' and ');
   const unbounded = bounds.some(([low, high]) => low === null || high === null);
   return {
+    term,
     level,
     kind: bounds.length === 2 && infinityInside ? 'two rays' : 'pieces',
     intervals: bounds,

@@ -1,0 +1,84 @@
+/**
+ * The files of a plan's results: `estimates.csv`, `estimates_summary.csv` and `estimates.json`, as text.
+ */
+import type { EstimateResult, PlanResults } from './run.js';
+
+/** `estimates.json`: every regression, the summaries over replicates, what failed. */
+export function estimatesJson(results: PlanResults, head: Readonly<Record<string, unknown>> = {}): string {
+  return `${JSON.stringify({ ...head, ...results }, null, 2)}\n`;
+}
+
+const CSV_COLUMNS = [
+  'name',
+  'arm',
+  'replicate',
+  'method',
+  'outcome',
+  'kind',
+  'term',
+  'estimate',
+  'std_error',
+  'statistic',
+  'df',
+  'p_value',
+  'ci_low',
+  'ci_high',
+  'nobs',
+  'households',
+  'clusters',
+  'r_squared',
+  'within_r_squared',
+] as const;
+
+/** One row a term: coefficients (`kind` coefficient) and, for logit, marginal effects (`kind` marginal_effect). */
+export function estimatesCsv(results: PlanResults): string {
+  const rows = results.estimates.flatMap((result: EstimateResult) =>
+    [
+      ...result.terms.map((term) => ({ ...term, kind: 'coefficient' })),
+      ...(result.marginal_effects ?? []).map((term) => ({ ...term, kind: 'marginal_effect' })),
+    ].map((term) => CSV_COLUMNS.map((name) => ({ ...result, ...term })[name])),
+  );
+  return csv(CSV_COLUMNS, rows);
+}
+
+const SUMMARY_COLUMNS = [
+  'name',
+  'arm',
+  'method',
+  'outcome',
+  'term',
+  'replicates',
+  'failed',
+  'mean',
+  'sd',
+  'mc_se',
+  'mean_std_error',
+  'se_ratio',
+  'rejects_zero',
+  'truth',
+  'bias',
+  'coverage',
+  'anderson_rubin_coverage',
+  'mean_nobs',
+] as const;
+
+/** One row an estimate, arm and term. */
+export function summaryCsv(results: PlanResults): string {
+  const rows = results.summary.flatMap((summary) =>
+    summary.terms.map((term) => SUMMARY_COLUMNS.map((name) => ({ ...summary, ...term })[name])),
+  );
+  return csv(SUMMARY_COLUMNS, rows);
+}
+
+function csv(header: readonly string[], rows: readonly (readonly unknown[])[]): string {
+  return [header, ...rows].map((row) => `${row.map(cell).join(',')}\r\n`).join('');
+}
+
+/** Numbers read back to the same double; null and NaN are empty. */
+function cell(value: unknown): string {
+  if (value === null || value === undefined) return '';
+  if (typeof value === 'number')
+    return Number.isNaN(value) ? '' : value === Infinity ? 'INF' : value === -Infinity ? '-INF' : String(value);
+  const text = String(value);
+  return /[",\r\n]/.test(text) ? `"${text.replaceAll('"', '""')}"` : text;
+}
