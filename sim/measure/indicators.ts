@@ -1,0 +1,408 @@
+/**
+ * The registry of indicators: one row of numbers for each arm, replicate and generation.
+ *
+ * One definition serves `indicators.csv`, the contrasts, the codebook, the report and the viewer; adding an
+ * indicator is one entry here. The measures themselves are in their own files. Knows nothing of files or arms.
+ */
+import { log } from '../../network/elementary.js';
+import type { Ties, Uniform } from '../../network/graph.js';
+import { dipPValue, dip as hartigansDip } from './dip.js';
+import { duclosEstebanRay } from './duclos-esteban-ray.js';
+import { type RatioMeasures, ratioMeasures, theilTBetween } from './entropy.js';
+import { estebanRayOfClasses } from './esteban-ray.js';
+import { meanAspirationGap, shareFrustrated } from './frustration.js';
+import { gini } from './gini.js';
+import { lorenz } from './lorenz.js';
+import { line, upwardMobility } from './mobility.js';
+import { densityModes } from './modes.js';
+import { averageRanks } from './order.js';
+import { quantileOfSorted } from './quantile.js';
+import { type Sample, sampleOf } from './sample.js';
+import { wolfson } from './wolfson.js';
+
+/** What one generation of one arm is measured from. Arrays are read, never kept or changed. */
+export interface IndicatorInput {
+  /** Wealth of the generation, above 0, length n. */
+  readonly wealth: Float64Array;
+  /** Place of each household, 0 … places−1. */
+  readonly place: Uint32Array;
+  readonly places: number;
+  /** Social group of each household, 0 … groups−1. */
+  readonly group: Uint32Array;
+  readonly groups: number;
+  readonly ties: Ties;
+  /** What households decided, or null in the last row, which holds only the final children. */
+  readonly decision: {
+    /** 1 where no milestone is met. */
+    readonly frustrated: Uint8Array;
+    /** Aspiration of the first milestone. */
+    readonly aspiration: Float64Array;
+  } | null;
+  /** The generation before, by household; null in generation 0. */
+  readonly parent: {
+    readonly wealth: Float64Array;
+    /** `rank` and `logWealth` of the context of that generation, when it is still at hand: saves a sort. */
+    readonly rank?: Float64Array | undefined;
+    readonly logWealth?: Float64Array | undefined;
+  } | null;
+  /** Random permutations for p-values. */
+  readonly permutations: number;
+  /** Stream the permutations are drawn from. */
+  readonly uniform: Uniform;
+}
+
+/** A generation with the pieces that several indicators share, each made when first asked for. */
+export class IndicatorContext {
+  readonly input: IndicatorInput;
+  readonly n: number;
+  #sample: Sample | undefined;
+  #logWealth: Float64Array | undefined;
+  #sortedLog: Sample | undefined;
+  #rank: Float64Array | undefined;
+  #ratios: RatioMeasures | undefined;
+  #curve: Float64Array | undefined;
+  #dip: number | undefined;
+
+  constructor(input: IndicatorInput) {
+    this.input = input;
+    this.n = input.wealth.length;
+  }
+
+  /** Wealth in ascending order. */
+  get sample(): Sample {
+    this.#sample ??= sampleOf(this.input.wealth);
+    return this.#sample;
+  }
+
+  /** Natural logarithm of wealth, by household. */
+  get logWealth(): Float64Array {
+    if (this.#logWealth === undefined) {
+      const { wealth } = this.input;
+      this.#logWealth = new Float64Array(this.n);
+      for (let i = 0; i < this.n; i++) this.#logWealth[i] = log(wealth[i]);
+    }
+    return this.#logWealth;
+  }
+
+  /** Log wealth in ascending order: the order of wealth itself, so no second sort. */
+  get sortedLog(): Sample {
+    if (this.#sortedLog === undefined) {
+      const { order, n } = this.sample;
+      const logs = this.logWealth;
+      const value = new Float64Array(n);
+      let sum = 0;
+      for (let k = 0; k < n; k++) {
+        value[k] = logs[order[k]];
+        sum += value[k];
+      }
+      this.#sortedLog = { n, value, weight: null, order, total: n, sum, mean: sum / n };
+    }
+    return this.#sortedLog;
+  }
+
+  /** Average rank of wealth, 1 … n, by household. */
+  get rank(): Float64Array {
+    this.#rank ??= averageRanks(this.input.wealth, this.sample.order);
+    return this.#rank;
+  }
+
+  get ratios(): RatioMeasures {
+    this.#ratios ??= ratioMeasures(this.sample);
+    return this.#ratios;
+  }
+
+  /** Lorenz ordinates at 0.4 and 0.9. */
+  get curve(): Float64Array {
+    this.#curve ??= lorenz(this.sample, [0.4, 0.9]);
+    return this.#curve;
+  }
+
+  /** Dip of log wealth. */
+  get dip(): number {
+    this.#dip ??= hartigansDip(this.sortedLog).dip;
+    return this.#dip;
+  }
+}
+
+/** What an indicator cannot do without; its cell is empty where that is missing. */
+export type Need = 'wealth' | 'decision' | 'parent' | 'ties';
+
+/** One column of `indicators.csv`. */
+export interface Indicator {
+  /** Column name. */
+  readonly name: string;
+  /** What it says, for a reader of the codebook. */
+  readonly meaning: string;
+  readonly formula: string;
+  /** Publication, or a note on common practice. */
+  readonly source: string;
+  /** `wealth` (the study's currency), `share` (0 … 1), `count`, `probability`, `index` (no unit). */
+  readonly unit: 'wealth' | 'share' | 'count' | 'probability' | 'index';
+  readonly needs: readonly Need[];
+  /** The value, NaN where it is not defined. Called only when its needs are met. */
+  readonly of: (context: IndicatorContext) => number;
+}
+
+/** Every indicator, in the order of the columns. */
+export const INDICATORS: readonly Indicator[] = [
+  {
+    name: 'mean_wealth',
+    meaning: 'Mean wealth',
+    formula: 'Σ y / n',
+    source: 'definition',
+    unit: 'wealth',
+    needs: ['wealth'],
+    of: (c) => c.sample.mean,
+  },
+  {
+    name: 'median_wealth',
+    meaning: 'Median wealth, the middle two averaged when their number is even',
+    formula: 'quantile ½, type 7',
+    source: 'Hyndman and Fan 1996',
+    unit: 'wealth',
+    needs: ['wealth'],
+    of: (c) => quantileOfSorted(c.sample.value, 0.5),
+  },
+  {
+    name: 'gini',
+    meaning: 'Gini coefficient of wealth, plug-in form (all n² pairs, no n/(n−1))',
+    formula: 'Σ (2i − n − 1) y_(i) / (n Σ y)',
+    source: 'Gini 1912',
+    unit: 'index',
+    needs: ['wealth'],
+    of: (c) => gini(c.sample),
+  },
+  {
+    name: 'theil_t',
+    meaning: 'Theil T of wealth, GE(1)',
+    formula: 'mean of r ln r, r = y/mean',
+    source: 'Theil 1967',
+    unit: 'index',
+    needs: ['wealth'],
+    of: (c) => c.ratios.theilT,
+  },
+  {
+    name: 'theil_l',
+    meaning: 'Theil L of wealth, mean log deviation, GE(0)',
+    formula: 'mean of −ln r, r = y/mean',
+    source: 'Theil 1967',
+    unit: 'index',
+    needs: ['wealth'],
+    of: (c) => c.ratios.theilL,
+  },
+  {
+    name: 'theil_t_between_places',
+    meaning: 'Part of Theil T between places; the rest lies within them',
+    formula: 'Σ s_g ln(mean_g/mean), s_g the place’s share of wealth',
+    source: 'Theil 1967',
+    unit: 'index',
+    needs: ['wealth'],
+    of: ({ input }) => theilTBetween(input.wealth, input.place, input.places),
+  },
+  {
+    name: 'theil_t_between_groups',
+    meaning: 'Part of Theil T between social groups; the rest lies within them',
+    formula: 'Σ s_g ln(mean_g/mean), s_g the group’s share of wealth',
+    source: 'Theil 1967',
+    unit: 'index',
+    needs: ['wealth'],
+    of: ({ input }) => theilTBetween(input.wealth, input.group, input.groups),
+  },
+  {
+    name: 'atkinson_half',
+    meaning: 'Atkinson index of wealth, inequality aversion ½',
+    formula: '1 − (mean of √r)², r = y/mean',
+    source: 'Atkinson 1970',
+    unit: 'index',
+    needs: ['wealth'],
+    of: (c) => c.ratios.atkinsonHalf,
+  },
+  {
+    name: 'atkinson_1',
+    meaning: 'Atkinson index of wealth, inequality aversion 1',
+    formula: '1 − exp(mean of ln r), r = y/mean',
+    source: 'Atkinson 1970',
+    unit: 'index',
+    needs: ['wealth'],
+    of: (c) => c.ratios.atkinson1,
+  },
+  {
+    name: 'atkinson_2',
+    meaning: 'Atkinson index of wealth, inequality aversion 2',
+    formula: '1 − 1/mean of (1/r), r = y/mean',
+    source: 'Atkinson 1970',
+    unit: 'index',
+    needs: ['wealth'],
+    of: (c) => c.ratios.atkinson2,
+  },
+  {
+    name: 'share_bottom_40',
+    meaning: 'Share of wealth held by the poorest four tenths (Lorenz curve, straight between households)',
+    formula: 'L(0.4)',
+    source: 'Lorenz 1905',
+    unit: 'share',
+    needs: ['wealth'],
+    of: (c) => c.curve[0],
+  },
+  {
+    name: 'share_top_10',
+    meaning: 'Share of wealth held by the richest tenth (Lorenz curve, straight between households)',
+    formula: '1 − L(0.9)',
+    source: 'Lorenz 1905',
+    unit: 'share',
+    needs: ['wealth'],
+    of: (c) => 1 - c.curve[1],
+  },
+  {
+    name: 'p90_p10',
+    meaning: 'Ratio of the 90th to the 10th percentile of wealth, type-7 quantiles',
+    formula: 'Q(0.9) / Q(0.1)',
+    source: 'Hyndman and Fan 1996',
+    unit: 'index',
+    needs: ['wealth'],
+    of: ({ sample }) => quantileOfSorted(sample.value, 0.9) / quantileOfSorted(sample.value, 0.1),
+  },
+  {
+    name: 'palma',
+    meaning: 'Palma ratio: share of the richest tenth over that of the poorest four tenths',
+    formula: '(1 − L(0.9)) / L(0.4)',
+    source: 'Palma 2011',
+    unit: 'index',
+    needs: ['wealth'],
+    of: ({ curve }) => (1 - curve[1]) / curve[0],
+  },
+  {
+    name: 'esteban_ray',
+    meaning: 'Esteban–Ray polarisation (α = ½, K = 1) of the three wealth classes that stand for the distribution best',
+    formula: 'Σ Σ p_i^1.5 p_j |m_i − m_j|, p the class shares, m the class means over the mean',
+    source: 'Esteban and Ray 1994; classes after Esteban, Gradín and Ray 2007',
+    unit: 'index',
+    needs: ['wealth'],
+    of: (c) => estebanRayOfClasses(c.sample, 0.5),
+  },
+  {
+    name: 'der_half',
+    meaning: 'Duclos–Esteban–Ray polarisation, α = ½, wealth in units of its mean, not halved',
+    formula: 'mean of √f(r) · mean |r − r_j|, r = y/mean, f a Gaussian kernel density, bandwidth 4.7 σ α^0.1/√n',
+    source: 'Duclos, Esteban and Ray 2004',
+    unit: 'index',
+    needs: ['wealth'],
+    of: (c) => duclosEstebanRay(c.sample, 0.5),
+  },
+  {
+    name: 'wolfson',
+    meaning: 'Wolfson’s index of bipolarisation',
+    formula: '2 (2 (½ − L(½)) − Gini) mean/median',
+    source: 'Wolfson 1994',
+    unit: 'index',
+    needs: ['wealth'],
+    of: (c) => wolfson(c.sample),
+  },
+  {
+    name: 'dip',
+    meaning: 'Hartigan’s dip of log wealth: distance to the nearest distribution with one mode',
+    formula: 'min over unimodal F of sup |F_n − F|',
+    source: 'Hartigan and Hartigan 1985',
+    unit: 'index',
+    needs: ['wealth'],
+    of: (c) => c.dip,
+  },
+  {
+    name: 'dip_p',
+    meaning: 'p-value of the dip against the uniform distribution (small: more than one mode)',
+    formula: 'interpolated in √n × dip from simulated quantiles',
+    source: 'Hartigan and Hartigan 1985; table by M. Maechler',
+    unit: 'probability',
+    needs: ['wealth'],
+    of: (c) => dipPValue(c.dip, c.n),
+  },
+  {
+    name: 'modes',
+    meaning: 'Modes of the log-wealth density that stand out by at least 5 % of the highest',
+    formula: 'local maxima of a Gaussian kernel density, bandwidth 0.9 min(sd, IQR/1.34) n^(−1/5)',
+    source: 'Silverman 1986, eq. 3.31',
+    unit: 'count',
+    needs: ['wealth'],
+    of: (c) => densityModes(c.sortedLog).length,
+  },
+  {
+    name: 'elasticity',
+    meaning: 'Intergenerational elasticity of wealth between this generation and its parents',
+    formula: 'least-squares slope of ln y_t on ln y_(t−1)',
+    source: 'Solon 1992',
+    unit: 'index',
+    needs: ['wealth', 'parent'],
+    of: (c) => line(logsOfParent(c), c.logWealth).slope,
+  },
+  {
+    name: 'rank_rank_slope',
+    meaning: 'Rank–rank slope between this generation and its parents, ties sharing their average rank',
+    formula: 'least-squares slope of rank(y_t) on rank(y_(t−1))',
+    source: 'Chetty, Hendren, Kline and Saez 2014',
+    unit: 'index',
+    needs: ['wealth', 'parent'],
+    of: (c) => line(parentOf(c).rank ?? averageRanks(parentOf(c).wealth), c.rank).slope,
+  },
+  {
+    name: 'upward_mobility',
+    meaning: 'Absolute upward mobility: share of households with more wealth than their parents',
+    formula: 'share of y_t > y_(t−1)',
+    source: 'Chetty et al. 2017',
+    unit: 'share',
+    needs: ['wealth', 'parent'],
+    of: (c) => upwardMobility(parentOf(c).wealth, c.input.wealth),
+  },
+  {
+    name: 'share_frustrated',
+    meaning: 'Share of households whose plan meets no milestone',
+    formula: 'mean of frustrated',
+    source: 'definition',
+    unit: 'share',
+    needs: ['decision'],
+    of: (c) => shareFrustrated(decisionOf(c).frustrated),
+  },
+  {
+    name: 'mean_aspiration_gap',
+    meaning: 'Mean distance of wealth below the first milestone’s aspiration, relative to the aspiration',
+    formula: 'mean of 1 − y/a_1',
+    source: 'Ray 2006; the measure is common practice',
+    unit: 'index',
+    needs: ['decision'],
+    of: (c) => meanAspirationGap(c.input.wealth, decisionOf(c).aspiration),
+  },
+];
+
+function parentOf({ input }: IndicatorContext): NonNullable<IndicatorInput['parent']> {
+  if (input.parent === null) throw new Error('this indicator needs a parent generation');
+  return input.parent;
+}
+
+function decisionOf({ input }: IndicatorContext): NonNullable<IndicatorInput['decision']> {
+  if (input.decision === null) throw new Error('this indicator needs a decision');
+  return input.decision;
+}
+
+function logsOfParent(context: IndicatorContext): Float64Array {
+  const { wealth, logWealth } = parentOf(context);
+  if (logWealth !== undefined) return logWealth;
+  const out = new Float64Array(wealth.length);
+  for (let i = 0; i < out.length; i++) out[i] = log(wealth[i]);
+  return out;
+}
+
+/**
+ * All indicators of one generation.
+ *
+ * @returns one value per entry of `INDICATORS`, in that order; NaN = missing. Cost O(n log n + ties).
+ */
+export function indicatorRow(context: IndicatorContext): Float64Array {
+  const { input } = context;
+  const row = new Float64Array(INDICATORS.length);
+  for (let k = 0; k < row.length; k++) {
+    const { needs, of } = INDICATORS[k];
+    const missing =
+      (input.decision === null && needs.includes('decision')) || (input.parent === null && needs.includes('parent'));
+    row[k] = missing ? NaN : of(context);
+  }
+  return row;
+}
