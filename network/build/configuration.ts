@@ -215,7 +215,12 @@ function repair(slots: TieSlots, poolStart: Uint32Array, uniform: Uniform): void
   for (let e = 0; e < m; e++) {
     if (!bad(e)) continue;
     let done = false;
-    for (let f = 0; f < m && !done; f++) done = tryMend(slots, e, f) || (slots.turn(f), tryMend(slots, e, f));
+    for (let f = 0; f < m && !done; f++) {
+      done = tryMend(slots, e, f);
+      if (done) break;
+      slots.turn(f);
+      done = tryMend(slots, e, f);
+    }
     if (!done) {
       throw infeasible(
         'degrees',

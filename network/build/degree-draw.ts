@@ -36,7 +36,7 @@ export function lognormalDegrees(n: number, mean: number, sdLog: number, uniform
   let spare = NaN;
   for (let i = 0; i < n; i++) {
     let z = spare;
-    if (z !== z) {
+    if (Number.isNaN(z)) {
       // polar method (Marsaglia and Bray 1964): two normals from a point in the disc
       let u: number;
       let v: number;
