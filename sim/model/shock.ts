@@ -1,0 +1,40 @@
+/**
+ * The luck that falls on planned child wealth: ln ε = s(√ω·ξ_place + √(1−ω)·ξ_household) − s²/2, so E ε = 1.
+ *
+ * Draws are functions of household, place and generation (random/draws.ts): arms of a study share them.
+ */
+import { exp } from '../../network/elementary.js';
+import type { Draws } from '../random/draws.js';
+import type { Households, Shock } from './types.js';
+
+/**
+ * Fills out[i] with ε of household i in a generation; all 1 when there is no shock.
+ *
+ * @param out - length n, overwritten. Cost O(n); allocates one number a place when places share luck.
+ */
+export function drawShocks(
+  shock: Shock,
+  households: Households,
+  draws: Draws,
+  generation: number,
+  out: Float64Array,
+): void {
+  const s = shock.sdLog;
+  const n = out.length;
+  if (!(s > 0)) {
+    out.fill(1);
+    return;
+  }
+  const shift = -0.5 * s * s;
+  draws.normals('householdShock', generation, out);
+  const own = s * Math.sqrt(1 - shock.sharedByPlace);
+  const shared = s * Math.sqrt(shock.sharedByPlace);
+  if (shared === 0) {
+    for (let i = 0; i < n; i++) out[i] = exp(own * out[i] + shift);
+    return;
+  }
+  const common = new Float64Array(households.places);
+  draws.normals('placeShock', generation, common);
+  const place = households.place;
+  for (let i = 0; i < n; i++) out[i] = exp(shared * common[place[i]] + own * out[i] + shift);
+}
