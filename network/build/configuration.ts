@@ -163,20 +163,22 @@ function boundShares(
   sorted: ReturnType<typeof cells>,
 ): { placeBound: number; groupBound: number } {
   const { members, places, cellStart, placeCells } = sorted;
+  // chance of each end to find its own place, and its own group there, its household's other ends left out
   let chancePlace = 0;
   let chanceGroup = 0;
   for (let p = 0; p < places; p++) {
     let inPlace = 0;
-    let squares = 0;
+    for (let at = cellStart[placeCells[p]]; at < cellStart[placeCells[p + 1]]; at++) inPlace += degree[members[at]];
     for (let c = placeCells[p]; c < placeCells[p + 1]; c++) {
       let inCell = 0;
       for (let at = cellStart[c]; at < cellStart[c + 1]; at++) inCell += degree[members[at]];
-      inPlace += inCell;
-      squares += inCell * inCell;
+      for (let at = cellStart[c]; at < cellStart[c + 1]; at++) {
+        const k = degree[members[at]];
+        if (k === 0) continue;
+        if (total > k) chancePlace += ((k / total) * (inPlace - k)) / (total - k);
+        if (inPlace > k) chanceGroup += ((k / total) * (inCell - k)) / (inPlace - k);
+      }
     }
-    if (inPlace === 0) continue;
-    chancePlace += (inPlace / total) * (inPlace / total);
-    chanceGroup += (inPlace / total) * (squares / (inPlace * inPlace));
   }
   return {
     placeBound: bound('within_place', spec.within_place, chancePlace),
@@ -185,7 +187,8 @@ function boundShares(
 
   function bound(key: string, share: number | undefined, chance: number): number {
     if (share === undefined) return 0;
-    if (chance >= 1) {
+    // everybody alike: nothing to bind (1e-9: rounding of the sum)
+    if (chance >= 1 - 1e-9) {
       if (share === 1) return 0;
       throw infeasible(key, `a share of ${share}, but everybody is in one ${key.slice(7)}`, `leave ${key} out`);
     }
