@@ -49,19 +49,18 @@ const MODEL: Model = {
 
 const PLACE_NAMES = ['Oak "Hill", north', 'Mill\nbridge', 'Ford'];
 
+/** About two ties a household; the last household has none. */
 function randomTies(n: number, random: () => number): Ties {
-  const source: number[] = [];
-  const target: number[] = [];
-  // the last household is left without ties
-  for (let i = 0; i < n - 1; i++) {
-    for (let j = i + 1; j < n - 1; j++) {
-      if (random() < 4 / n) {
-        source.push(i);
-        target.push(j);
-      }
-    }
+  const pairs = new Set<number>();
+  for (let e = 0; e < 2 * n; e++) {
+    const a = Math.floor(random() * (n - 1));
+    const b = Math.floor(random() * (n - 1));
+    if (a !== b) pairs.add(Math.min(a, b) * n + Math.max(a, b));
   }
-  return fromPairs(n, Uint32Array.from(source), Uint32Array.from(target), null);
+  const ends = [...pairs];
+  const source = Uint32Array.from(ends, (pair) => Math.floor(pair / n));
+  const target = Uint32Array.from(ends, (pair) => pair % n);
+  return fromPairs(n, source, target, null);
 }
 
 /** Hands one arm of one replicate to a listener, the same every time. */
