@@ -6,11 +6,13 @@ import { basename, dirname, join } from 'node:path';
 import type { Command } from 'commander';
 import { InputError } from '../../network/errors.js';
 import type { FrameSource } from '../estimate/frame.js';
-import { estimatesCsv, estimatesJson, summaryCsv } from '../estimate/output.js';
+import { drawsCsv, estimatesCsv, estimatesJson, summaryCsv } from '../estimate/output.js';
 import { panelSource } from '../estimate/panel.js';
-import { type Plan, parsePlan } from '../estimate/plan.js';
+import { type Estimate, type Plan, parsePlan } from '../estimate/plan.js';
 import { planText } from '../estimate/print.js';
 import { type PlanResults, runEstimates } from '../estimate/run.js';
+import { rScript } from '../estimate/script-r.js';
+import { pythonScript } from '../estimate/script-python.js';
 import { csvSource, parquetSource } from '../estimate/table.js';
 import { folderSource, openResults } from '../results/open.js';
 
@@ -31,7 +33,7 @@ export function estimateCommand(program: Command): void {
     .description(
       'Runs the regressions of a plan: least squares, logit or instruments, with absorbed effects and robust or\n' +
         'clustered errors, arm by arm and over replicates. In a results folder it writes estimates.csv,\n' +
-        'estimates_summary.csv and estimates.json; on a table it only prints.',
+        'estimates_summary.csv, estimates.json, and panel.R and panel.py that rerun them; on a table it only prints.',
     )
     .addHelpText(
       'after',
@@ -57,12 +59,12 @@ export function estimateCommand(program: Command): void {
         onProgress: progress(options.json === true),
       });
       const head = { source: source.place, plan: options.plan };
-      if (folder !== undefined) writeEstimates(folder, results, head);
+      if (folder !== undefined) writeEstimates(folder, plan.estimates, results, head);
       if (options.json) process.stdout.write(estimatesJson(results, head));
       else {
         console.log(planText(results));
         if (folder !== undefined)
-          console.log(`\nWritten to ${folder}: estimates.csv, estimates_summary.csv, estimates.json.`);
+          console.log(`\nWritten to ${folder}: estimates.csv, estimates_summary.csv, estimates.json; rerun them by panel.R or panel.py.`);
       }
     });
 }
@@ -99,12 +101,21 @@ export async function tableSource(file: string): Promise<FrameSource> {
   return csvSource(readFileSync(file, 'utf8'), file);
 }
 
-/** Writes the tables of a plan's results into its folder. */
-function writeEstimates(folder: string, results: PlanResults, head: Readonly<Record<string, unknown>>): void {
+/** Writes the tables of a plan's results into its folder, and the scripts that rerun it. */
+function writeEstimates(
+  folder: string,
+  estimates: readonly Estimate[],
+  results: PlanResults,
+  head: Readonly<Record<string, unknown>>,
+): void {
+  const draws = drawsCsv(results);
   const files: Record<string, string> = {
     'estimates.csv': estimatesCsv(results),
     'estimates_summary.csv': summaryCsv(results),
     'estimates.json': estimatesJson(results, head),
+    'panel.py': pythonScript(estimates),
+    'panel.R': rScript(estimates),
+    ...(draws === undefined ? {} : { 'estimates_draws.csv': draws }),
   };
   for (const [name, text] of Object.entries(files)) {
     // under another name first, so that a kill leaves no half file

@@ -7,12 +7,12 @@
  */
 import { Command, CommanderError } from 'commander';
 import { describe, InputError, RunError } from '../../network/errors.js';
+import { VERSION } from '../version.js';
 import { checkCommand } from './check.js';
 import { estimateCommand } from './estimate.js';
 import { networkCommand } from './network.js';
 import { presetsCommand } from './presets.js';
 import { runCommand } from './run.js';
-import { VERSION } from './version.js';
 import { viewCommand } from './view.js';
 
 const program = new Command('rungsight')

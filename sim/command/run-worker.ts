@@ -5,7 +5,7 @@ import { workerData } from 'piscina';
 import { InputError, type Problem, RunError } from '../../network/errors.js';
 import type { Facts } from '../results/facts.js';
 import { folderStore } from '../results/folder.js';
-import { type ReplicateNotes, runReplicate } from '../results/run-replicate.js';
+import { runReplicate } from '../results/run-replicate.js';
 import type { Prepared } from '../study/replicate.js';
 
 /** Set once a worker. */
@@ -19,15 +19,15 @@ export interface WorkerSetup {
 
 /** How a replicate ended. Errors of ours travel as data: classes do not survive the way between threads. */
 export type Outcome =
-  | { readonly ok: true; readonly replicate: number; readonly notes: ReplicateNotes }
+  | { readonly ok: true; readonly replicate: number }
   | { readonly ok: false; readonly replicate: number; readonly problems: readonly Problem[] }
   | { readonly ok: false; readonly replicate: number; readonly failed: string };
 
 export default function runOne(replicate: number): Outcome {
   const { prepared, facts, folder, done } = workerData as WorkerSetup;
   try {
-    const notes = runReplicate(prepared, facts, folderStore(folder), replicate, () => Atomics.add(done, 0, 1));
-    return { ok: true, replicate, notes };
+    runReplicate(prepared, facts, folderStore(folder), replicate, () => Atomics.add(done, 0, 1));
+    return { ok: true, replicate };
   } catch (error) {
     if (error instanceof InputError) return { ok: false, replicate, problems: error.problems };
     if (error instanceof RunError) return { ok: false, replicate, failed: error.message };

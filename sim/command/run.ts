@@ -12,22 +12,24 @@ import { Piscina } from 'piscina';
 import { InputError, RunError } from '../../network/errors.js';
 import { type Answer, answerText } from '../results/answer.js';
 import type { Facts } from '../results/facts.js';
+import { finishTables } from '../results/finish.js';
 import { type RunFolder, resumeRun, startRun, studyHash } from '../results/folder.js';
-import { canonicalText, factsOf, finishTables, householdsOf, type ReplicateNotes } from '../results/run-replicate.js';
+import { canonicalText, factsOf, householdsOf } from '../results/run-replicate.js';
 import type { Study } from '../study/complete.js';
 import { studyText } from '../study/parse.js';
 import { portable } from '../study/portable.js';
+import { VERSION } from '../version.js';
+import { wholeNumber } from './options.js';
 import { duration, progress } from './progress.js';
 import type { Outcome, WorkerSetup } from './run-worker.js';
 import { placed, readStudy, type StudyOnDisk } from './study-files.js';
-import { VERSION } from './version.js';
 
 interface RunOptions {
   readonly out?: string;
   readonly threads?: number;
   readonly replicates?: number;
   readonly resume?: string;
-  readonly view?: true;
+  readonly view?: boolean;
   readonly json?: true;
 }
 
@@ -36,10 +38,15 @@ export function runCommand(program: Command): void {
     .command('run')
     .argument('[study]', 'a study file, or the name of a built-in study')
     .option('--out <folder>', 'results folder to make (default: results/ and the name of the study file)')
-    .addOption(new Option('--threads <n>', 'worker threads (default: one a processor)').argParser(wholeNumber('--threads', 1)))
-    .addOption(new Option('--replicates <n>', "replicates, instead of the study's").argParser(wholeNumber('--replicates', 1)))
+    .addOption(
+      new Option('--threads <n>', 'worker threads (default: one a processor)').argParser(wholeNumber('--threads', 1)),
+    )
+    .addOption(
+      new Option('--replicates <n>', "replicates, instead of the study's").argParser(wholeNumber('--replicates', 1)),
+    )
     .option('--resume <folder>', 'go on with a run that was stopped')
     .option('--view', 'open the viewer afterwards (not without a terminal; stop it with Ctrl-C)')
+    .option('--no-view', 'do not open the viewer')
     .option('--json', 'machine-readable result on standard output')
     .summary('run a study: all arms and replicates, to a results folder')
     .description(
@@ -54,20 +61,6 @@ export function runCommand(program: Command): void {
     .action(async (study: string | undefined, options: RunOptions) => {
       await run(study, options);
     });
-}
-
-/** Parser of a whole-number option. */
-export function wholeNumber(option: string, least: number): (text: string) => number {
-  return (text) => {
-    const n = Number(text);
-    if (/^\d+$/.test(text) && n >= least) return n;
-    throw new InputError({
-      code: 'bad-option',
-      place: option,
-      problem: `'${text}' is not a whole number of at least ${least}`,
-      remedy: `give one, such as ${option} ${Math.max(least, 2)}`,
-    });
-  };
 }
 
 async function run(given: string | undefined, options: RunOptions): Promise<void> {
@@ -93,7 +86,8 @@ async function run(given: string | undefined, options: RunOptions): Promise<void
 
   say('writing tables');
   await folder.assemble(facts, study.keep.formats);
-  const { answer, notes } = await finishTables(folder, facts, study);
+  const { answer, notes, tables } = finishTables(folder.store, facts, study);
+  for (const { name, rows } of tables) folder.writeTable(facts, name, rows);
   folder.writeCodebook(facts);
   const seconds = (performance.now() - began) / 1000;
   await folder.finish({ seconds, peakMemory: process.resourceUsage().maxRSS * 1024, notes });
@@ -102,7 +96,7 @@ async function run(given: string | undefined, options: RunOptions): Promise<void
   } else {
     console.log(finalText(answer, folder.out, seconds));
   }
-  if (options.view !== undefined) await viewAfter(folder.out, quiet);
+  if (options.view === true) await viewAfter(folder.out, quiet);
 }
 
 /** Reads the study and makes, or takes up, its results folder. Nothing is written before all is checked. */
@@ -184,8 +178,8 @@ async function simulateAll(
   threads: number,
   n: number,
   quiet: boolean,
-): Promise<ReplicateNotes[]> {
-  if (todo.length === 0) return [];
+): Promise<void> {
+  if (todo.length === 0) return;
   const { study } = disk.prepared;
   const done = new Int32Array(new SharedArrayBuffer(4));
   const setup: WorkerSetup = { prepared: disk.prepared, facts, folder: folder.partial, done };
@@ -208,14 +202,13 @@ async function simulateAll(
   };
   process.on('SIGINT', stop);
   process.on('SIGTERM', stop);
-  const notes: ReplicateNotes[] = [];
   try {
     await Promise.all(
       todo.map(async (replicate) => {
         const outcome = (await pool.run(replicate)) as Outcome;
-        if (outcome.ok) notes.push(outcome.notes);
-        else if ('problems' in outcome) throw new InputError(placed(outcome.problems, disk.parsed));
-        else throw new RunError(`replicate ${replicate}`, ...splitMessage(outcome.failed));
+        if (outcome.ok) return;
+        if ('problems' in outcome) throw new InputError(placed(outcome.problems, disk.parsed));
+        throw new RunError(`replicate ${replicate}`, ...splitMessage(outcome.failed));
       }),
     );
   } catch (error) {
@@ -239,7 +232,6 @@ async function simulateAll(
     );
   }
   await pool.destroy();
-  return notes;
 }
 
 /** What went wrong and what to do, from an error's one line `where: what; remedy`. */
@@ -281,4 +273,3 @@ async function viewAfter(out: string, quiet: boolean): Promise<void> {
   const served = await serveViewer({ dir: out });
   console.log(`\nThe viewer is at ${served.url}  (Ctrl-C stops it; 'npm start -- --no-view' skips it)`);
 }
-

@@ -14,29 +14,50 @@ export class IndicatorCube {
   readonly names: readonly string[];
   private readonly planes = new Map<string, Float64Array>();
 
-  /** @param table - indicators.csv, rows in the order arm, replicate, generation */
-  constructor(table: TableData) {
+  private constructor(arms: readonly string[], replicates: number, generations: number, names: readonly string[]) {
+    this.arms = arms;
+    this.replicates = replicates;
+    this.generations = generations;
+    this.names = names;
+    for (const name of names) this.planes.set(name, new Float64Array(arms.length * replicates * generations).fill(NaN));
+  }
+
+  /** A cube without a value yet. @param generations - T + 1 */
+  static empty(
+    arms: readonly string[],
+    replicates: number,
+    generations: number,
+    names: readonly string[],
+  ): IndicatorCube {
+    return new IndicatorCube(arms, replicates, generations, names);
+  }
+
+  /** @param table - indicators.csv of a results folder */
+  static of(table: TableData): IndicatorCube {
     const arm = table.columns['arm'] as Coded;
     const replicate = table.columns['replicate'] as Int32Array;
     const generation = table.columns['generation'] as Int32Array;
-    this.arms = arm.names;
     let replicates = 0;
     let generations = 0;
     for (let row = 0; row < table.rows; row++) {
       replicates = Math.max(replicates, replicate[row] + 1);
       generations = Math.max(generations, generation[row] + 1);
     }
-    this.replicates = replicates;
-    this.generations = generations;
-    this.names = table.names.filter((name) => !['arm', 'replicate', 'generation'].includes(name));
-    for (const name of this.names) {
-      const column = table.columns[name] as Float64Array;
-      const plane = new Float64Array(arm.names.length * replicates * generations).fill(NaN);
+    const names = table.names.filter((name) => !['arm', 'replicate', 'generation'].includes(name));
+    const cube = new IndicatorCube(arm.names, replicates, generations, names);
+    for (const name of names) {
+      const column = table.columns[name] as Float64Array | Int32Array;
+      const whole = column instanceof Int32Array;
       for (let row = 0; row < table.rows; row++) {
-        plane[(arm.codes[row] * replicates + replicate[row]) * generations + generation[row]] = column[row];
+        const value = whole && column[row] < 0 ? NaN : column[row];
+        cube.set(name, arm.codes[row], replicate[row], generation[row], value);
       }
-      this.planes.set(name, plane);
     }
+    return cube;
+  }
+
+  set(name: string, arm: number, replicate: number, generation: number, value: number): void {
+    this.planes.get(name)![(arm * this.replicates + replicate) * this.generations + generation] = value;
   }
 
   has(name: string): boolean {

@@ -182,6 +182,11 @@ export class RunFolder {
     this.writeFile('codebook.md', markdown);
   }
 
+  /** Takes everything away again: for a run that was refused before any replicate was done. */
+  discard(): void {
+    rmSync(this.partial, { recursive: true, force: true });
+  }
+
   /** Hashes all files, says `complete`, removes the parts and moves the folder to its place. Last of all. */
   async finish(end: ManifestEnd): Promise<void> {
     const names = this.store.list('').filter((name) => !name.startsWith(`${PARTS}/`) && name !== MANIFEST);

@@ -374,7 +374,7 @@ export function readSample(text: string, path: string, column: string, weightCol
 }
 
 /** Reads one degree a household: the named column, or the only one. */
-function readDegrees(text: string, path: string, column: string | undefined, n: number): Float64Array {
+export function readDegrees(text: string, path: string, column: string | undefined, n: number): Float64Array {
   const table = readCsv(text, path);
   if (column === undefined && table.header.length > 1) {
     throw new InputError({

@@ -7,7 +7,7 @@
  */
 import { exp, log, pow } from '../../network/elementary.js';
 import type { Labels } from '../../network/graph.js';
-import { type Draws, PURPOSE } from '../random/draws.js';
+import type { Draws } from '../random/draws.js';
 import { normalCdf, normalQuantile } from '../random/normal.js';
 import type { Study } from './complete.js';
 import type { Inputs } from './inputs.js';
@@ -35,7 +35,7 @@ export function drawPopulation(study: Study, inputs: Inputs, draws: Draws): Popu
   const file = inputs.households;
   if (file !== null) {
     const tasteDraw = new Float64Array(file.n);
-    draws.normals(PURPOSE.taste, 0, tasteDraw);
+    draws.normals('childWeight', 0, tasteDraw);
     return {
       labels: { n: file.n, place: file.place, group: file.group, wealth: file.wealth },
       places: file.placeNames.length,
@@ -63,7 +63,7 @@ export function drawPopulation(study: Study, inputs: Inputs, draws: Draws): Popu
     for (let i = 0; i < n; i++) wealth[i] *= factor;
   }
   const tasteDraw = new Float64Array(n);
-  draws.normals(PURPOSE.taste, 0, tasteDraw);
+  draws.normals('childWeight', 0, tasteDraw);
   return {
     labels: { n, place, group, wealth },
     places,
@@ -79,7 +79,7 @@ function drawPlaces(n: number, places: number, sizeCv: number, draws: Draws): Ui
   const weight = new Float64Array(places).fill(1);
   if (sizeCv > 0) {
     const s = Math.sqrt(log(1 + sizeCv * sizeCv));
-    draws.normals(PURPOSE.placeSize, 0, weight);
+    draws.normals('placeLabel', 0, weight);
     for (let p = 0; p < places; p++) weight[p] = exp(s * weight[p]);
   }
   const sizes = apportion(n, weight);
@@ -98,7 +98,7 @@ function drawGroups(n: number, shares: readonly number[], draws: Draws): Uint32A
   if (shares.length === 1) return group;
   const sizes = apportion(n, Float64Array.from(shares), 0);
   const u = new Float64Array(n);
-  draws.uniforms(PURPOSE.group, 0, u);
+  draws.uniforms('groupLabel', 0, u);
   const sorted = u.slice().sort();
   const cuts: number[] = [];
   let upTo = 0;
@@ -155,7 +155,7 @@ function drawWealth(
 ): Float64Array {
   const n = place.length;
   const latent = new Float64Array(n);
-  draws.normals(PURPOSE.wealth, 0, latent);
+  draws.normals('initialWealth', 0, latent);
   if (wealth.between_places > 0) {
     const effect = placeEffects(place, places, draws);
     const between = Math.sqrt(wealth.between_places);
@@ -173,7 +173,7 @@ function drawWealth(
  */
 function placeEffects(place: Uint32Array, places: number, draws: Draws): Float64Array {
   const effect = new Float64Array(places);
-  draws.normals(PURPOSE.placeWealth, 0, effect);
+  draws.normals('initialPlaceWealth', 0, effect);
   const size = new Float64Array(places);
   for (let i = 0; i < place.length; i++) size[place[i]]++;
   let centre = 0;
