@@ -181,6 +181,42 @@ export function invented(n: number, degree = 8, generations = 8): Source {
       },
     };
   };
+  const pockets = (): Table => {
+    const rows: { generation: number; pocket: number; size: number; wealth: number }[] = [];
+    for (const s of snapshots[0]) {
+      if (!s.decided) continue;
+      const members = new Map<number, number[]>();
+      s.pocket.forEach((p, i) => {
+        if (p >= 0) members.set(p, [...(members.get(p) ?? []), i]);
+      });
+      for (const [pocket, list] of members)
+        rows.push({
+          generation: s.generation,
+          pocket,
+          size: list.length,
+          wealth: list.reduce((sum, i) => sum + s.wealth[i], 0) / list.length,
+        });
+    }
+    const column = (value: (r: (typeof rows)[number]) => number): Float64Array => Float64Array.from(rows, value);
+    return {
+      rows: rows.length,
+      columns: {
+        arm: rows.map(() => info.arms[0].name),
+        replicate: column(() => 0),
+        generation: column((r) => r.generation),
+        pocket: column((r) => r.pocket),
+        size: column((r) => r.size),
+        fringe: column((r) => Math.round(r.size / 3)),
+        places: column(() => 1),
+        mean_wealth: column((r) => r.wealth),
+        p_value: column((r) => (r.pocket % 2 === 0 ? 0.005 : 0.04)),
+        event: rows.map(() => 'grows'),
+        parent: column(() => NaN),
+        local: column((r) => r.size - 2),
+        general: column(() => 2),
+      },
+    };
+  };
   return {
     kind: 'page',
     info,
@@ -195,7 +231,7 @@ export function invented(n: number, degree = 8, generations = 8): Source {
       });
       return out;
     },
-    table: async (name: TableName) => (name === 'indicators' ? indicators() : null),
+    table: async (name: TableName) => (name === 'indicators' ? indicators() : name === 'pockets' ? pockets() : null),
     files: async () => [],
     file: async () => new Uint8Array(),
     close: () => {},

@@ -106,7 +106,7 @@ export function axes(extents: readonly Float64Array[]): Axis[] {
     highest = Math.max(highest, high);
     widest = Math.max(widest, high - low);
   }
-  if (highest - lowest <= 1.8 * widest) return each.map(() => padded(lowest, highest));
+  if (highest - lowest <= 1.3 * widest) return each.map(() => padded(lowest, highest));
   // one width for all, so that the spreads of two generations can be compared by eye
   return each.map(({ low, high }) => {
     const middle = (low + high) / 2;

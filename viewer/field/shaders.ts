@@ -38,7 +38,7 @@ void main() {
   vHole = mix(aShape.x, aShape.y, uGlide);
   vHalo = aShape.w * uHalo;
   float radius = uSize * (0.5 + 2.0 * aShape.z) * (1.0 + 0.34 * vHole) * uDensity;
-  float reach = radius * (vHalo > 0.0 ? 2.3 : 1.0) + 1.0;
+  float reach = radius * (aShape.w > 0.0 ? 2.0 : 1.0) + 1.0;
   vRadius = radius / reach;
   gl_PointSize = 2.0 * reach;
 }
@@ -60,9 +60,9 @@ void main() {
   float hole = vHole > 0.01 ? 1.0 - smoothstep(inner - soft * 0.6, inner + soft * 0.6, d) : 0.0;
   vec4 ink = vec4(vColour.rgb, 1.0) * vColour.a;
   vec4 mark = mix(ink, uPaper * 0.8, hole) * disc;
-  // a thin circle round the mark: seen at once, and gone at the next generation
-  float at = vRadius + (1.0 - vRadius) * 0.72;
-  float halo = vHalo * 0.62 * (1.0 - smoothstep(soft * 0.5, soft * 1.5, abs(d - at)));
+  // a thin circle round the mark: seen at once, then quiet
+  float at = vRadius + (1.0 - vRadius) * 0.66;
+  float halo = vHalo * (1.0 - smoothstep(soft * 0.35, soft * 1.1, abs(d - at)));
   vec4 glow = vec4(vColour.rgb, 1.0) * halo;
   outColour = mark + glow * (1.0 - mark.a);
 }

@@ -1,15 +1,15 @@
 /**
  * Sideways places on the ladder until ties are known: a column a place, poorer to richer, households spread within.
  */
-import type { Cast, Snapshot } from '../data/source.js';
+import type { Cast } from '../data/source.js';
 
 /** @returns 0 … 1 by household */
-export function sidewaysOf(cast: Cast, snapshot: Snapshot): Float32Array {
+export function sidewaysOf(cast: Cast, wealth: Float64Array): Float32Array {
   const { n, place, places } = cast;
   const sum = new Float64Array(places);
   const count = new Float64Array(places);
   for (let i = 0; i < n; i++) {
-    sum[place[i]] += Math.log(Math.max(1e-9, snapshot.wealth[i]));
+    sum[place[i]] += Math.log(Math.max(1e-9, wealth[i]));
     count[place[i]]++;
   }
   const order = Array.from({ length: places }, (_, p) => p).sort((p, q) => sum[p] / count[p] - sum[q] / count[q]);

@@ -18,8 +18,8 @@ import { type ArmScene, looksUpTo, type Scene } from './scene.js';
 import { sleeve } from './sleeve.js';
 
 export interface StageEvents {
-  /** A household was picked (index in the cast), or the ground (−1). */
-  select(household: number): void;
+  /** A household was picked (index in the cast) in a field, or the ground (−1). */
+  select(household: number, field: 0 | 1): void;
 }
 
 interface Field {
@@ -36,6 +36,8 @@ interface Field {
 
 const GLIDE = 620;
 const MOVE = 420;
+/** Milliseconds after its arrival in which a halo grows quiet. */
+const FADE = 1400;
 /** Milliseconds a frame may take while something moves, before fewer ties are drawn. */
 const BUDGET = 26;
 
@@ -330,7 +332,10 @@ export class Stage {
   #advance(now: number): void {
     if (this.#glideStart >= 0) {
       this.#glide = Math.min(1, Math.max(0, (now - this.#glideStart) / GLIDE));
-      if (this.#glide >= 1) this.#glideStart = -1;
+      if (this.#glide >= 1) {
+        this.#glideStart = -1;
+        this.#arrived = now;
+      }
     }
     if (this.#cameraStart >= 0) {
       const s = Math.min(1, Math.max(0, (now - this.#cameraStart) / MOVE));
@@ -349,11 +354,13 @@ export class Stage {
     }
     this.#lastFrame = moving ? now : 0;
     if (moving) this.#ask();
-    else if (this.#wasMoving) this.#ask();
+    else if (this.#wasMoving || (this.#arrived >= 0 && now - this.#arrived < FADE)) this.#ask();
     this.#wasMoving = moving;
   }
 
   #lastFrame = 0;
+  /** When the last glide ended; −1 before any. */
+  #arrived = -1;
   #wasMoving = false;
 
   #draw(): void {
@@ -383,7 +390,7 @@ export class Stage {
         camera: this.#camera,
         glide: g,
         size,
-        halo: this.#glideStart >= 0 ? g : 1,
+        halo: this.#haloNow(g),
         ties,
         ink: Float32Array.of(r / 255, gr / 255, b / 255, strength),
         paper: Float32Array.of(pr / 255, pg / 255, pb / 255, 1),
@@ -391,6 +398,13 @@ export class Stage {
     );
     this.#layers(scene, g);
     this.#drawPyramid(scene, g);
+  }
+
+  /** Halos are strong while marks arrive and quiet afterwards. */
+  #haloNow(g: number): number {
+    if (this.#glideStart >= 0) return 0.75 * g;
+    const age = this.#arrived < 0 ? 1 : Math.min(1, (performance.now() - this.#arrived) / FADE);
+    return 0.75 - 0.47 * age;
   }
 
   #drawPyramid(scene: Scene, g: number): void {
@@ -573,7 +587,7 @@ export class Stage {
       const up = (e: PointerEvent): void => {
         if (down !== null && !down.moved && e.type === 'pointerup') {
           const [px, py] = local(e);
-          this.#events.select(this.#pick(k, px, py));
+          this.#events.select(this.#pick(k, px, py), k === 0 ? 0 : 1);
         }
         down = null;
       };

@@ -69,7 +69,7 @@ export function drawPyramid(target: SVGSVGElement, d: PyramidDrawing): void {
   if (width < 10) return;
   target.setAttribute('viewBox', `0 0 ${width} ${height}`);
   const gap = 1.35 * rem;
-  const reach = width / 2 - gap - 0.1 * rem;
+  const reach = width / 2 - gap - 0.75 * rem;
   const sides = (['left', 'right'] as const).map((side) => {
     const b = densityOf(to[side], to.axis);
     const a = from === null || share >= 1 ? b : densityOf(from[side], from.axis);
@@ -113,7 +113,7 @@ export function drawPyramid(target: SVGSVGElement, d: PyramidDrawing): void {
       ({ w, y }) =>
         svg`<text class="axis-text" x=${middle} y=${y + 0.34 * rem} text-anchor="middle">${amount(w)}</text>`,
     );
-  const half = 3.1 * rem;
+  const half = 3.0 * rem;
   const foot = height - 0.78 * rem;
   render(
     svg`<title>${`Wealth of both arms, back to back. Medians ${amount(sides[0].b.median)} and ${amount(sides[1].b.median)}.`}</title>

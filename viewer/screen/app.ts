@@ -2,23 +2,41 @@
  * The app: holds the view and the source, loads what the view needs, hands a scene to the stage and texts to the
  * screen. Everything the reader does comes through here.
  */
-import { html, render } from 'lit-html';
+import { html, nothing, render, type TemplateResult } from 'lit-html';
+import type { Problem } from '../../network/errors.js';
+import { standalone } from '../../sim/results/figures/figure.js';
+import { download, fileName } from '../data/download.js';
 import { Loader } from '../data/loader.js';
-import { numbers, ROLE, type Snapshot, type Source, text } from '../data/source.js';
+import { type Cast, numbers, ROLE, type Snapshot, type Source, type Table, text } from '../data/source.js';
 import { drawer } from '../drawer/drawer.js';
+import { LEVEL } from '../drawer/pockets.js';
 import { type Axis, axes } from '../field/arrangement.js';
 import { FieldCanvas } from '../field/canvas.js';
-import { COLOURINGS, type Colouring, legend } from '../field/colouring.js';
+import { COLOURINGS, type Colouring, type LegendItem, legend } from '../field/colouring.js';
+import { Layouts } from '../field/layouts.js';
+import { CAUTION, picture } from '../field/picture.js';
 import type { ArmScene, Scene, ShownPocket } from '../field/scene.js';
-import { sidewaysOf } from '../field/sideways.js';
 import { reducedMotion, Stage } from '../field/stage.js';
+import { type Run, startRun } from '../run/run.js';
+import { openSheet, type SheetState, studySheet } from '../sheet/sheet.js';
 import { strip } from '../strip/strip.js';
+import { guide } from './guide.js';
+import { type SaveOffer, saveSheet } from './save.js';
 import { type ScreenEvents, screenTemplate } from './screen.js';
 import { DARK, LIGHT, type Tokens } from './tokens.js';
 import { fromLink, START, toLink, type View } from './view.js';
 import { percent, plural } from './words.js';
 
-const DWELL = 1050;
+/** Milliseconds a generation stands while playing, its glide included. */
+const DWELL = 1150;
+
+/** How the study shown came to be: what a save and another run need. */
+export interface Origin {
+  readonly yaml: string;
+  readonly files: ReadonlyMap<string, Uint8Array>;
+  /** True when a link to this page brings the same study back. */
+  readonly linked: boolean;
+}
 
 export class App {
   readonly mount: HTMLElement;
@@ -27,18 +45,35 @@ export class App {
   stage: Stage | null = null;
   scene: Scene | null = null;
   playing = false;
-  /** Frustrated shares by arm, of the replicate shown. */
-  #shares: Float64Array[] = [];
+  /** Field whose arm the Household panel speaks of. */
+  side: 0 | 1 = 0;
+  /** Counts the sources opened, so that kept values are of the right one. */
+  sourceCount = 0;
+  /** Size of the drawer's panel in figure units. */
+  panelSize = { width: 1180, height: 160 };
+  origin: Origin;
+  #frustrated: Float64Array[] = [];
+  #pockets: Table | null = null;
   #axes: Axis[] = [];
-  #sideways = new Map<string, Float32Array>();
+  readonly #layouts: Layouts;
   #turn = 0;
   #timer = 0;
   #dark: boolean;
+  #run: Run | null = null;
+  #running: { share: number; doing: string } | null = null;
+  #message: { says: string; wrong: boolean } | null = null;
+  #sheet: SheetState | null = null;
+  #saving: { doing: string } | null = null;
+  #guide: { step: number; only: boolean } | null = null;
+  /** Files of the study run in the page, for saving. */
+  #made: ReadonlyMap<string, Uint8Array<ArrayBuffer>> | null = null;
 
-  constructor(mount: HTMLElement, source: Source) {
+  constructor(mount: HTMLElement, source: Source, origin: Origin) {
     this.mount = mount;
+    this.origin = origin;
     this.loader = new Loader(source);
-    const kept = localStorage.getItem('rungsight-theme');
+    this.#layouts = new Layouts(() => void this.load());
+    const kept = stored('theme');
     this.#dark = kept === null ? matchMedia('(prefers-color-scheme: dark)').matches : kept === 'dark';
     document.documentElement.dataset.theme = this.#dark ? 'dark' : 'light';
     this.view = this.#allowed(fromLink(location.hash, { ...START, replicate: source.info.shown[0] ?? 0 }));
@@ -58,21 +93,46 @@ export class App {
 
   /** Last generation that can be shown. */
   get reached(): number {
-    return this.source.info.generations;
+    const { generations, every } = this.source.info;
+    return (generations - 1) % every === 0 ? generations : generations - 1 - ((generations - 1) % every);
   }
 
   async start(): Promise<void> {
     this.render();
     const root = this.mount.querySelector('.stage') as HTMLElement;
     const canvas = await FieldCanvas.open(root.querySelector('canvas') as HTMLCanvasElement);
-    this.stage = new Stage(root, canvas, { select: (i) => this.select(i) }, this.tokens);
+    this.stage = new Stage(
+      root,
+      canvas,
+      {
+        select: (i, field) => {
+          this.side = field;
+          this.select(i);
+        },
+      },
+      this.tokens,
+    );
+    new ResizeObserver(() => this.#measurePanel()).observe(this.mount.querySelector('.drawer') as HTMLElement);
+    this.#measurePanel();
+    this.#caution();
     await this.load();
+  }
+
+  /** Shows another study. */
+  async open(source: Source, origin: Origin, keepView: boolean): Promise<void> {
+    this.loader.source.close();
+    this.loader = new Loader(source);
+    this.origin = origin;
+    this.sourceCount++;
+    this.#layouts.clear();
+    const view = keepView ? this.view : { ...START, arrangement: this.view.arrangement, tab: this.view.tab };
+    this.view = this.#allowed({ ...view, pocket: null });
+    await this.load(true);
   }
 
   /** Changes the view and shows it. */
   async change(patch: Partial<View>, still = false): Promise<void> {
-    const last = this.view;
-    this.view = this.#allowed({ ...last, ...patch });
+    this.view = this.#allowed({ ...this.view, ...patch });
     const link = `#${toLink(this.view)}`;
     if (location.hash !== link) history.replaceState(null, '', link);
     await this.load(still);
@@ -86,43 +146,85 @@ export class App {
     });
   }
 
+  lookAt(side: 0 | 1): void {
+    this.side = side;
+    this.render();
+  }
+
+  /** Picks a pocket of the generation shown and brings it into view. */
+  framePocket(field: 0 | 1, id: number): void {
+    const arm = this.scene?.arms[field];
+    if (arm === undefined) return;
+    const members: number[] = [];
+    for (let i = 0; i < arm.now.pocket.length; i++) if (arm.now.pocket[i] === id) members.push(i);
+    void this.change({ pocket: { field, id } }).then(() => this.stage?.frameOn(members, field));
+  }
+
   /** Loads what the view needs and shows it; a later call overtakes an earlier one. */
   async load(still = false): Promise<void> {
     const turn = ++this.#turn;
-    const { view, loader } = this;
+    try {
+      const scene = await this.#compose(this.view);
+      if (turn !== this.#turn) return;
+      this.scene = scene;
+      if (this.#message?.wrong === true) this.#message = null;
+      this.render();
+      this.stage?.show(scene, still);
+    } catch (error) {
+      if (turn !== this.#turn) return;
+      this.#message = { says: error instanceof Error ? error.message : String(error), wrong: true };
+      this.render();
+    }
+  }
+
+  async #compose(view: View): Promise<Scene> {
+    const { loader } = this;
+    const { info } = this.source;
     const { replicate, generation } = view;
     const arms = [view.left, view.right];
-    const [casts, ties, now, earlier, extents] = await Promise.all([
+    const before = generation - info.every;
+    const tieTime = Math.min(generation, info.generations - 1);
+    const [casts, ties, now, earlier, extents, indicators, pockets] = await Promise.all([
       Promise.all(arms.map((a) => loader.cast(a, replicate))),
-      Promise.all(arms.map((a) => loader.ties(a, replicate, Math.min(generation, this.source.info.generations - 1)))),
+      Promise.all(arms.map((a) => loader.ties(a, replicate, tieTime))),
       Promise.all(arms.map((a) => loader.snapshot(a, replicate, generation))),
-      Promise.all(arms.map((a) => (generation > 0 ? loader.snapshot(a, replicate, generation - 1) : null))),
+      Promise.all(
+        arms.map((a) =>
+          generation > 0
+            ? loader.snapshot(a, replicate, generation === info.generations ? generation - 1 : before)
+            : null,
+        ),
+      ),
       Promise.all(arms.map((a) => loader.extents(a, replicate))),
+      this.source.table('indicators'),
+      this.source.table('pockets'),
     ]);
-    await this.#loadShares();
-    if (turn !== this.#turn) return;
+    this.#frustrated = sharesOf(
+      indicators,
+      info.arms.map((a) => a.name),
+      info.generations,
+      replicate,
+    );
+    this.#pockets = pockets;
     this.#axes = axes(extents);
     const selected = view.household === null ? -1 : casts[0].id.indexOf(view.household);
-    const scene: Scene = {
+    const first = await Promise.all(arms.map((a) => loader.snapshot(a, replicate, 0)));
+    return {
       generation,
       arms: [0, 1].map((k): ArmScene => {
-        const key = `${arms[k]}/${replicate}`;
-        let sideways = this.#sideways.get(key);
-        if (sideways === undefined) {
-          sideways = sidewaysOf(casts[k], earlier[k] ?? now[k]);
-          this.#sideways.set(key, sideways);
-        }
+        const key = `${this.sourceCount}/${arms[k]}/${replicate}`;
+        const map = view.arrangement === 'map' ? this.#layouts.map(key, ties[k], casts[k]) : null;
         return {
-          name: this.source.info.arms[arms[k]].name,
-          note: this.#note(arms[k]),
+          name: info.arms[arms[k]].name,
+          note: noteOf(info.arms[arms[k]].reached, casts[k], ties[k]),
           cast: casts[k],
           now: now[k],
           earlier: earlier[k],
           ties: ties[k],
-          sideways,
-          map: null,
-          print: null,
-          pockets: pocketsOf(now[k]),
+          sideways: this.#layouts.sideways(key, ties[k], casts[k], first[k].wealth),
+          map: map?.positions ?? null,
+          print: map?.print ?? null,
+          pockets: pocketsOf(now[k], pockets, info.arms[arms[k]].name, replicate),
         };
       }) as [ArmScene, ArmScene],
       arrangement: view.arrangement,
@@ -131,12 +233,9 @@ export class App {
       axis: this.#axes[generation] ?? { low: 0, high: 1 },
       selected,
       pocket: [0, 1].map((k) => (view.pocket?.field === k ? view.pocket.id : -1)) as [number, number],
-      sidewaysSays: casts[0].places > 1 ? 'places, poorer to richer →' : '',
-      groupNames: this.source.info.groupNames,
+      sidewaysSays: casts[0].places > 1 ? 'places, poorer to richer →' : 'neighbours side by side, poorer to richer →',
+      groupNames: info.groupNames,
     };
-    this.scene = scene;
-    this.render();
-    this.stage?.show(scene, still);
   }
 
   play(on = !this.playing): void {
@@ -150,26 +249,99 @@ export class App {
           this.render();
           return;
         }
-        await this.change({ generation: this.view.generation + 1 });
+        await this.change({ generation: this.view.generation + this.source.info.every });
         this.#timer = window.setTimeout(step, reducedMotion() ? 1600 : DWELL);
       };
-      if (this.view.generation >= this.reached)
+      if (this.view.generation >= this.reached) {
         void this.change({ generation: 0 }, true).then(() => {
-          this.#timer = window.setTimeout(step, 400);
+          this.#timer = window.setTimeout(step, 500);
         });
-      else void step();
+      } else void step();
     }
     this.render();
+  }
+
+  goTo(generation: number): void {
+    this.play(false);
+    if (generation !== this.view.generation) void this.change({ generation });
+  }
+
+  /** Runs a study in the page; what is shown stays until its first replicate is there. */
+  run(yaml: string, files: ReadonlyMap<string, Uint8Array>, linked = false): void {
+    this.#run?.cancel();
+    this.#running = { share: 0, doing: 'reading the study' };
+    this.#message = null;
+    let first = true;
+    const origin: Origin = { yaml, files, linked };
+    this.#run = startRun(
+      { yaml, files },
+      {
+        progress: (share, doing) => this.progress(share, doing),
+        arrived: (source, made, whole) => {
+          const again = !first;
+          first = false;
+          if (whole) this.finished(made);
+          else this.#made = null;
+          void this.open(source, origin, again || linked).then(() => {
+            if (!again && !linked) this.#caution();
+          });
+        },
+        problems: (problems) => this.#refused(problems),
+        failed: (message) => this.failed(message),
+      },
+    );
+    this.render();
+  }
+
+  /** Takes over a run that was started before there was a screen. */
+  adopt(run: Run): void {
+    this.#run = run;
+    this.#running = { share: 0, doing: 'going on with the other replicates' };
+    this.render();
+  }
+
+  /** How far the run has come. */
+  progress(share: number, doing: string): void {
+    if (this.#run === null) return;
+    this.#running = { share, doing };
+    this.render();
+  }
+
+  /** The run is over and its files are here. */
+  finished(made: ReadonlyMap<string, Uint8Array<ArrayBuffer>>): void {
+    this.#running = null;
+    this.#run = null;
+    this.#made = made;
+    this.render();
+  }
+
+  failed(message: string): void {
+    this.#running = null;
+    this.#run = null;
+    this.#message = { says: `The run failed: ${message}`, wrong: true };
+    this.render();
+  }
+
+  #refused(problems: readonly Problem[]): void {
+    this.#running = null;
+    this.#run = null;
+    if (this.#sheet === null) this.#openSheet();
+    this.#sheet?.report(problems);
+    this.#message = { says: `The study cannot run: ${problems[0]?.problem ?? ''}`, wrong: true };
+    this.render();
+  }
+
+  /** Saves a figure as a file of its own. */
+  saveFigure(name: string, svg: string): void {
+    const { info } = this.source;
+    const caption = `${info.title}, replicate ${this.view.replicate + 1}, generation ${this.view.generation}. Seed ${info.seed}, Rungsight ${info.version}. ${CAUTION}`;
+    download(`${fileName(info.title)}-${fileName(name)}.svg`, standalone(svg, this.#dark ? 'dark' : 'light', caption));
   }
 
   render(): void {
     const { info } = this.source;
     const { view, scene } = this;
-    const decided = scene?.arms[0].now.decided ?? true;
-    const shares: [Float64Array, Float64Array] = [
-      this.#shares[view.left] ?? new Float64Array(info.generations + 1).fill(NaN),
-      this.#shares[view.right] ?? new Float64Array(info.generations + 1).fill(NaN),
-    ];
+    const none = new Float64Array(info.generations + 1).fill(NaN);
     const names: [string, string] = [info.arms[view.left].name, info.arms[view.right].name];
     render(
       screenTemplate(
@@ -182,58 +354,255 @@ export class App {
           notes: [scene?.arms[0].note ?? '', scene?.arms[1].note ?? ''],
           feet: this.#feet(),
           summary: this.#summary(),
-          legend: legend(
-            view.colouring,
-            this.tokens,
-            info.groupNames,
-            info.arms[view.left].model.milestones.length,
-            decided,
-            scene?.arms.some((a) => a.pockets.length > 0) ?? false,
-          ),
+          legend: this.#legend(),
           colourings: this.#colourings(),
-          running: null,
+          running: this.#running,
+          message: this.#message,
           strip: strip(
-            { shares, names, generation: view.generation, reached: this.reached, playing: this.playing },
+            {
+              shares: [this.#frustrated[view.left] ?? none, this.#frustrated[view.right] ?? none],
+              names,
+              generation: view.generation,
+              reached: this.reached,
+              every: info.every,
+              playing: this.playing,
+            },
             { go: (t) => this.goTo(t), play: () => this.play() },
           ),
           drawer: drawer(this),
-          overlay: html``,
+          overlay: this.#overlay(),
           dark: this.#dark,
         },
         this.#events,
       ),
       this.mount,
     );
-  }
-
-  goTo(generation: number): void {
-    this.play(false);
-    if (generation !== this.view.generation) void this.change({ generation });
+    for (const dialog of this.mount.querySelectorAll('dialog')) if (!dialog.open) dialog.showModal();
   }
 
   readonly #events: ScreenEvents = {
     change: (patch) => void this.change(patch),
-    study: () => {},
-    run: () => {},
-    cancel: () => {},
-    save: () => {},
-    find: (said) => {
-      const id = Number.parseInt(said, 10);
-      const cast = this.scene?.arms[0].cast;
-      if (cast === undefined) return;
-      const index = Number.isNaN(id) ? -1 : cast.id.indexOf(id);
-      this.select(index);
+    study: () => {
+      this.#openSheet();
+      this.render();
     },
+    run: () => this.run(this.origin.yaml, this.origin.files, this.origin.linked),
+    cancel: () => {
+      this.#run?.cancel();
+      this.#run = null;
+      this.#running = null;
+      this.#message = { says: 'The run was stopped. What is shown is what it had reached.', wrong: false };
+      this.render();
+    },
+    save: () => {
+      this.#saving = { doing: '' };
+      this.render();
+    },
+    find: (said) => this.#find(said),
     theme: () => {
       this.#dark = !this.#dark;
-      localStorage.setItem('rungsight-theme', this.#dark ? 'dark' : 'light');
+      store('theme', this.#dark ? 'dark' : 'light');
       document.documentElement.dataset.theme = this.#dark ? 'dark' : 'light';
       if (this.stage !== null) this.stage.tokens = this.tokens;
       this.render();
     },
-    guide: () => {},
+    guide: () => {
+      this.#guide = { step: 0, only: false };
+      this.render();
+      (this.mount.querySelector('.guide') as HTMLElement | null)?.focus();
+    },
+    dismiss: () => {
+      this.#message = null;
+      this.render();
+    },
     stageKey: (e) => this.#stageKey(e),
   };
+
+  #find(said: string): void {
+    const cast = this.scene?.arms[0].cast;
+    if (cast === undefined || said.trim() === '') {
+      this.select(-1);
+      return;
+    }
+    const index = /^\d+$/.test(said.trim()) ? cast.id.indexOf(Number(said)) : -1;
+    if (index < 0) {
+      this.#message = {
+        says: `There is no household ${said.trim()}: numbers run from ${cast.id[0]} to ${cast.id[cast.n - 1]}.`,
+        wrong: false,
+      };
+      this.render();
+      return;
+    }
+    this.#message = null;
+    this.select(index);
+  }
+
+  #overlay(): TemplateResult {
+    const close = (what: 'sheet' | 'saving') => (): void => {
+      if (what === 'sheet') {
+        this.#sheet?.close();
+        this.#sheet = null;
+      } else this.#saving = null;
+      this.render();
+    };
+    return html`
+      ${
+        this.#sheet === null
+          ? nothing
+          : html`<dialog class="sheet" aria-label="Study" @close=${close('sheet')} @cancel=${close('sheet')}>${studySheet(
+              this.#sheet,
+              {
+                close: close('sheet'),
+                run: (yaml, files) => {
+                  close('sheet')();
+                  this.run(yaml, files);
+                },
+                save: (yaml) => download(`${fileName(this.source.info.title)}.yaml`, yaml),
+                changed: () => {},
+              },
+            )}</dialog>`
+      }
+      ${
+        this.#saving === null
+          ? nothing
+          : html`<dialog class="save" aria-label="Save" @close=${close('saving')} @cancel=${close('saving')}>${saveSheet(
+              { offers: this.#offers(), link: this.origin.linked ? location.href : null, doing: this.#saving.doing },
+              close('saving'),
+              () => void navigator.clipboard?.writeText(location.href),
+            )}</dialog>`
+      }
+      ${
+        this.#guide === null
+          ? nothing
+          : guide(this.#guide.step, this.#guide.only, {
+              step: (step) => {
+                this.#guide = { step, only: false };
+                this.render();
+              },
+              close: (forGood) => {
+                if (forGood) store('guide', 'seen');
+                this.#guide = null;
+                this.render();
+              },
+            })
+      }
+    `;
+  }
+
+  /** The walk-through at the first visit; later, the cautions alone, once for each study opened. */
+  #caution(): void {
+    if (stored('guide') !== 'seen') this.#guide = { step: 0, only: false };
+    else if (stored(`caution ${this.source.info.title}`) === null) this.#guide = { step: 0, only: true };
+    else return;
+    store(`caution ${this.source.info.title}`, 'shown');
+    this.render();
+  }
+
+  #openSheet(): void {
+    this.#sheet ??= openSheet(this.origin.yaml, new Map(this.origin.files));
+  }
+
+  #offers(): SaveOffer[] {
+    const { source } = this;
+    const { info } = source;
+    const stem = fileName(info.title);
+    const doing = (says: string, act: () => Promise<void>) => async (): Promise<void> => {
+      this.#saving = { doing: says };
+      this.render();
+      try {
+        await act();
+        this.#saving = null;
+      } catch (error) {
+        this.#saving = { doing: error instanceof Error ? error.message : String(error) };
+      }
+      this.render();
+    };
+    const file = (name: string, says: string, from: string): SaveOffer => ({
+      name,
+      says,
+      act: doing(`Saving ${from} …`, async () => download(`${stem}-${from}`, await source.file(from))),
+    });
+    return [
+      {
+        name: 'Picture (PNG)',
+        says: 'both fields as they stand, with legend and caption',
+        act: doing('Drawing the picture …', async () =>
+          download(`${stem}-generation-${this.view.generation}.png`, await this.picture()),
+        ),
+      },
+      {
+        name: 'Panel (CSV)',
+        says: 'every household in every generation, for any statistics program',
+        act: doing('Writing the panel as CSV …', async () => {
+          const { panelCsv } = await import('../data/panel-csv.js');
+          download(`${stem}-panel.csv`, await panelCsv(source));
+        }),
+      },
+      file('Panel (Parquet)', 'the same, compact', 'panel.parquet'),
+      file('Ties', 'who has ties to whom, and when', 'ties.parquet'),
+      {
+        name: 'Results folder (ZIP)',
+        says: 'all tables, codebook and manifest, as the command line writes them',
+        act: doing('Packing the folder …', async () => {
+          const { zipFiles } = await import('../../sim/results/bundle.js');
+          const files = new Map<string, Uint8Array>(this.#made ?? []);
+          if (this.#made === null) for (const name of await source.files()) files.set(name, await source.file(name));
+          download(`${stem}.zip`, zipFiles(stem, files));
+        }),
+      },
+      {
+        name: 'Study (YAML)',
+        says: 'every setting written out: running it again gives the same bytes',
+        act: doing('Saving the study …', async () => download(`${stem}.yaml`, info.yaml)),
+      },
+    ];
+  }
+
+  /** The fields as a picture with legend and caption. */
+  async picture(): Promise<Blob> {
+    const { stage, scene, view } = this;
+    const { info } = this.source;
+    if (stage === null || scene === null) throw new Error('There is nothing to draw yet.');
+    stage.drawNow();
+    return picture(
+      stage.root,
+      {
+        title: `${info.title}, replicate ${view.replicate + 1} of ${info.replicates}`,
+        summary: this.#summary(),
+        names: [scene.arms[0].name, scene.arms[1].name],
+        notes: [scene.arms[0].note, scene.arms[1].note],
+        feet: this.#feet(),
+        legend: this.#legend(),
+        caption: `Study “${info.title}”; arms ${scene.arms[0].name} and ${scene.arms[1].name}; generation ${view.generation} of ${info.generations}; ${plural(scene.arms[0].cast.n, 'household')}; seed ${info.seed}; Rungsight ${info.version}.`,
+      },
+      this.tokens,
+      Math.max(2, window.devicePixelRatio),
+    );
+  }
+
+  #legend(): readonly LegendItem[] {
+    const { info } = this.source;
+    const { view, scene } = this;
+    return legend(
+      view.colouring,
+      this.tokens,
+      info.groupNames,
+      info.arms[view.left].model.milestones.length,
+      scene?.arms[0].now.decided ?? true,
+      scene?.arms.some((a) => a.pockets.length > 0) ?? false,
+    );
+  }
+
+  #measurePanel(): void {
+    const panel = this.mount.querySelector('.panel');
+    if (panel === null) return;
+    const rem = Number.parseFloat(getComputedStyle(document.documentElement).fontSize);
+    const width = ((panel.clientWidth - 2.4 * rem) / rem) * 13;
+    const height = ((panel.clientHeight - 1.4 * rem) / rem) * 13;
+    if (Math.abs(width - this.panelSize.width) < 1 && Math.abs(height - this.panelSize.height) < 1) return;
+    this.panelSize = { width, height };
+    this.render();
+  }
 
   #stageKey(e: KeyboardEvent): void {
     if ((e.target as Element).closest('select, input, button') !== null || e.ctrlKey || e.metaKey || e.altKey) return;
@@ -266,7 +635,12 @@ export class App {
 
   #key(e: KeyboardEvent): void {
     const at = e.target as Element;
-    if (e.key === ' ' && at.closest('button, select, input, textarea, a, [role=dialog]') === null) {
+    if (e.key === 'Escape' && this.#guide !== null) {
+      this.#guide = null;
+      this.render();
+      return;
+    }
+    if (e.key === ' ' && at.closest('button, select, input, textarea, a, dialog, [contenteditable]') === null) {
       e.preventDefault();
       this.play();
     }
@@ -276,10 +650,12 @@ export class App {
     const { info } = this.source;
     const within = (v: number, most: number): number => Math.max(0, Math.min(most, v));
     const arms = info.arms.length - 1;
+    const reached = this.reached;
+    const wanted = within(view.generation, reached);
     return {
       ...view,
       replicate: info.shown.includes(view.replicate) ? view.replicate : (info.shown[0] ?? 0),
-      generation: within(view.generation, this.reached),
+      generation: wanted === reached ? reached : Math.round(wanted / info.every) * info.every,
       left: within(view.left, arms),
       right: within(view.right, arms),
       colouring: this.#colourings().includes(view.colouring) ? view.colouring : 'status',
@@ -292,61 +668,106 @@ export class App {
     return COLOURINGS.filter((c) => (c !== 'group' || info.groupNames.length > 1) && (c !== 'treated' || treated));
   }
 
-  async #loadShares(): Promise<void> {
-    const table = await this.source.table('indicators');
-    const { info } = this.source;
-    this.#shares = info.arms.map(() => new Float64Array(info.generations + 1).fill(NaN));
-    if (table === null) return;
-    const arm = text(table, 'arm');
-    const replicate = numbers(table, 'replicate');
-    const generation = numbers(table, 'generation');
-    const share = numbers(table, 'share_frustrated');
-    for (let r = 0; r < table.rows; r++) {
-      if (replicate[r] !== this.view.replicate) continue;
-      const k = info.arms.findIndex((a) => a.name === arm[r]);
-      if (k >= 0) this.#shares[k][generation[r]] = share[r];
-    }
-  }
-
-  #note(arm: number): string {
-    const { reached } = this.source.info.arms[arm];
-    const said: string[] = [];
-    if (reached.economic_connectedness !== undefined)
-      said.push(`economic connectedness ${reached.economic_connectedness.toFixed(2)}`);
-    return said.join(', ');
-  }
-
   #feet(): [string, string] {
-    const says = this.view.arrangement === 'ladder' ? (this.scene?.sidewaysSays ?? '') : '';
-    return [says, says];
+    const { scene } = this;
+    if (scene === null) return ['', ''];
+    if (scene.arrangement === 'ladder') return [scene.sidewaysSays, scene.sidewaysSays];
+    return scene.arms.map((a) => (a.map === null ? 'laying out the map …' : (a.print ?? ''))) as [string, string];
   }
 
   /** The generation shown in a sentence. */
   #summary(): string {
     const { scene, view } = this;
-    if (scene === null) return 'Reading the study …';
-    const { info } = this.source;
+    if (scene === null) return this.#running === null ? 'Reading the study …' : 'Running the study …';
     const [a, b] = scene.arms;
-    if (!a.now.decided) return `Generation ${view.generation}: the last children, before they decide.`;
-    const shareA = this.#shares[view.left]?.[view.generation];
-    const shareB = this.#shares[view.right]?.[view.generation];
+    if (!a.now.decided) return `Generation ${scene.generation}: the last children, before they decide.`;
+    const shareA = this.#frustrated[view.left]?.[scene.generation];
+    const shareB = this.#frustrated[view.right]?.[scene.generation];
     const pockets = a.pockets.length + b.pockets.length;
     const where =
-      pockets === 0
-        ? 'no pocket is more than chance'
-        : `${plural(pockets, 'pocket')}${a.pockets.length === 0 ? `, all in ${b.name}` : b.pockets.length === 0 ? `, all in ${a.name}` : `, ${a.pockets.length} in ${a.name}`}`;
-    const years = info.yearsPerGeneration > 0 && view.generation > 0 ? '' : '';
-    return `Generation ${view.generation}${years}: ${percent(shareA)} frustrated in ${a.name}, ${percent(shareB)} in ${b.name}; ${where}.`;
+      this.#pockets === null
+        ? ''
+        : pockets === 0
+          ? '; no pocket'
+          : `; ${plural(pockets, 'pocket')}${
+              a.pockets.length === 0
+                ? `, ${pockets === 1 ? '' : 'all '}in ${b.name}`
+                : b.pockets.length === 0
+                  ? `, ${pockets === 1 ? '' : 'all '}in ${a.name}`
+                  : `, ${a.pockets.length} in ${a.name}`
+            }`;
+    return `Generation ${scene.generation}: ${percent(shareA ?? NaN)} frustrated in ${a.name}, ${percent(shareB ?? NaN)} in ${b.name}${where}.`;
   }
 }
 
-function pocketsOf(snapshot: Snapshot): ShownPocket[] {
-  const by = new Map<number, number[]>();
-  for (let i = 0; i < snapshot.pocket.length; i++) {
-    if (snapshot.role[i] !== ROLE.core || snapshot.pocket[i] < 0) continue;
-    const list = by.get(snapshot.pocket[i]);
-    if (list === undefined) by.set(snapshot.pocket[i], [i]);
-    else list.push(i);
+/** Frustrated share by arm and generation of a replicate. */
+function sharesOf(
+  table: Table | null,
+  arms: readonly string[],
+  generations: number,
+  replicate: number,
+): Float64Array[] {
+  const out = arms.map(() => new Float64Array(generations + 1).fill(NaN));
+  if (table === null) return out;
+  const arm = text(table, 'arm');
+  const rep = numbers(table, 'replicate');
+  const generation = numbers(table, 'generation');
+  const share = numbers(table, 'share_frustrated');
+  for (let r = 0; r < table.rows; r++) {
+    const k = rep[r] === replicate ? arms.indexOf(arm[r]) : -1;
+    if (k >= 0 && generation[r] <= generations) out[k][generation[r]] = share[r];
   }
-  return [...by].map(([id, members]) => ({ id, members, pValue: NaN }));
+  return out;
+}
+
+/** Pockets of a generation that are more than chance, with their core members. */
+function pocketsOf(snapshot: Snapshot, table: Table | null, arm: string, replicate: number): ShownPocket[] {
+  if (table === null || !snapshot.decided) return [];
+  const arms = text(table, 'arm');
+  const [rep, generation, id, p] = ['replicate', 'generation', 'pocket', 'p_value'].map((name) => numbers(table, name));
+  const found = new Map<number, { members: number[]; pValue: number }>();
+  for (let k = 0; k < table.rows; k++) {
+    if (arms[k] === arm && rep[k] === replicate && generation[k] === snapshot.generation && p[k] < LEVEL)
+      found.set(id[k], { members: [], pValue: p[k] });
+  }
+  for (let i = 0; i < snapshot.pocket.length; i++)
+    if (snapshot.role[i] === ROLE.core) found.get(snapshot.pocket[i])?.members.push(i);
+  return [...found].filter(([, { members }]) => members.length > 0).map(([pocket, rest]) => ({ id: pocket, ...rest }));
+}
+
+/** What an arm's network reached, in a few words. */
+function noteOf(
+  reached: Readonly<Record<string, number>>,
+  cast: Cast,
+  ties: { start: Uint32Array; target: Uint32Array },
+): string {
+  const said: string[] = [];
+  const within = (labels: Uint32Array): number => {
+    let same = 0;
+    for (let i = 0; i < cast.n; i++)
+      for (let e = ties.start[i]; e < ties.start[i + 1]; e++) if (labels[ties.target[e]] === labels[i]) same++;
+    return ties.target.length > 0 ? same / ties.target.length : NaN;
+  };
+  if (cast.places > 1) said.push(`ties within place ${percent(within(cast.place))}`);
+  else if (cast.groups > 1) said.push(`ties within group ${percent(within(cast.group))}`);
+  const connected = reached.economic_connectedness;
+  if (connected !== undefined) said.push(`connectedness ${connected.toFixed(2)}`);
+  return said.join(', ');
+}
+
+/** Kept on this machine only, and only what the reader chose; a browser that keeps nothing is fine. */
+function stored(key: string): string | null {
+  try {
+    return localStorage.getItem(`rungsight ${key}`);
+  } catch {
+    return null;
+  }
+}
+
+function store(key: string, value: string): void {
+  try {
+    localStorage.setItem(`rungsight ${key}`, value);
+  } catch {
+    // a browser that keeps nothing shows the walk-through again
+  }
 }

@@ -21,6 +21,7 @@ export interface ScreenParts {
   readonly legend: readonly LegendItem[];
   readonly colourings: readonly Colouring[];
   readonly running: { readonly share: number; readonly doing: string } | null;
+  readonly message: { readonly says: string; readonly wrong: boolean } | null;
   readonly strip: TemplateResult;
   readonly drawer: TemplateResult;
   readonly overlay: unknown;
@@ -36,6 +37,7 @@ export interface ScreenEvents {
   find(text: string): void;
   theme(): void;
   guide(): void;
+  dismiss(): void;
   stageKey(e: KeyboardEvent): void;
 }
 
@@ -98,8 +100,20 @@ export function screenTemplate(parts: ScreenParts, events: ScreenEvents): Templa
           }
         </div>
         <p class="summary" role="status" aria-live="polite">${parts.summary}</p>
+        ${
+          parts.message === null
+            ? nothing
+            : html`<p class=${parts.message.wrong ? 'message wrong' : 'message'} role="alert">${parts.message.says}
+                <button class="plain" @click=${() => events.dismiss()}>dismiss</button></p>`
+        }
       </div>
       <div class="actions">
+        ${
+          parts.running === null
+            ? nothing
+            : html`<span class="running"><progress max="1" .value=${parts.running.share} aria-label="Run"></progress>
+                <span>${Math.round(parts.running.share * 100)}\u202f%, ${parts.running.doing}</span></span>`
+        }
         <button class="button" @click=${() => events.study()}>Study…</button>
         ${
           parts.running === null

@@ -14,6 +14,8 @@ export interface StripData {
   readonly generation: number;
   /** Last generation that can be shown. */
   readonly reached: number;
+  /** Generations 0, every, 2 every … can be shown. */
+  readonly every: number;
   readonly playing: boolean;
 }
 
@@ -41,14 +43,14 @@ export function strip(data: StripData, events: StripEvents): TemplateResult {
   };
   const key = (e: KeyboardEvent): void => {
     const to: Record<string, number> = {
-      ArrowRight: data.generation + 1,
-      ArrowUp: data.generation + 1,
-      ArrowLeft: data.generation - 1,
-      ArrowDown: data.generation - 1,
+      ArrowRight: data.generation + data.every,
+      ArrowUp: data.generation + data.every,
+      ArrowLeft: data.generation - data.every,
+      ArrowDown: data.generation - data.every,
       Home: 0,
       End: last,
-      PageUp: data.generation + 3,
-      PageDown: data.generation - 3,
+      PageUp: data.generation + 3 * data.every,
+      PageDown: data.generation - 3 * data.every,
     };
     if (!(e.key in to)) return;
     e.preventDefault();

@@ -68,8 +68,8 @@ export function densitiesFigure(size: Size, left: ArmWealth, right: ArmWealth, t
   );
 }
 
-/** 1, 2, 5 × powers of ten between two logs, thinned to at most seven. */
-export function roundWealths(low: number, high: number): number[] {
+/** 1, 2, 5 × powers of ten between two logs, thinned to at most so many. */
+export function roundWealths(low: number, high: number, most = 7): number[] {
   for (const set of [[1, 2, 5], [1, 3], [1]]) {
     const list: number[] = [];
     for (let p = Math.floor(low / Math.LN10); p <= Math.ceil(high / Math.LN10); p++)
@@ -77,7 +77,7 @@ export function roundWealths(low: number, high: number): number[] {
         const v = Number(`${m}e${p}`);
         if (Math.log(v) > low && Math.log(v) < high) list.push(v);
       }
-    if (list.length <= 7) return list;
+    if (list.length <= most) return list;
   }
   return [];
 }

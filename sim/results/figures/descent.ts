@@ -28,8 +28,11 @@ export function descentFigure(size: Size, d: Descent, title = 'Line of descent: 
   const x = scaleLinear().domain([0, T]).range([room.left, room.right]);
   const y = scaleLog().domain([low, high]).range([room.bottom, room.top]);
   const parts: string[] = [];
-  const whole = y.ticks(4);
-  const ticks = whole.length > 4 ? whole.filter((_, k) => k % Math.ceil(whole.length / 4) === 0) : whole;
+  const ticks = roundWealths(
+    Math.log(low) - 1e-9,
+    Math.log(high) + 1e-9,
+    Math.max(2, Math.floor((room.bottom - room.top) / 26)),
+  );
   for (const t of ticks)
     parts.push(
       rule(room.left, y(t), room.right, y(t), 'f-grid'),
@@ -54,11 +57,10 @@ export function descentFigure(size: Size, d: Descent, title = 'Line of descent: 
   }
   const lastA = y(d.aspiration[d.aspiration.length - 1]);
   const lastW = y(Math.max(low, d.wealth[T]));
-  const apart = Math.abs(lastA - lastW) < 16 ? (lastA <= lastW ? 1 : -1) * (16 - Math.abs(lastA - lastW)) * 0.5 : 0;
-  const hold = (v: number): number => Math.max(room.top + 6, Math.min(room.bottom + 2, v));
+  const [labelA, labelW] = spread([lastA + 4, lastW + 4], 15, room.top + 6, room.bottom + 4);
   parts.push(
-    label(room.right + 10, hold(lastA + 4 - apart), 'aspires', 'start', 'f-text'),
-    label(room.right + 10, hold(lastW + 4 + apart), 'has', 'start', 'f-soft'),
+    label(room.right + 10, labelA, 'aspires', 'start', 'f-text'),
+    label(room.right + 10, labelW, 'has', 'start', 'f-soft'),
   );
   const frustrated = Array.from(d.met).filter((m) => m === 0).length;
   return figure(
