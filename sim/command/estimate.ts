@@ -11,8 +11,8 @@ import { panelSource } from '../estimate/panel.js';
 import { type Estimate, type Plan, parsePlan } from '../estimate/plan.js';
 import { planText } from '../estimate/print.js';
 import { type PlanResults, runEstimates } from '../estimate/run.js';
-import { rScript } from '../estimate/script-r.js';
 import { pythonScript } from '../estimate/script-python.js';
+import { rScript } from '../estimate/script-r.js';
 import { csvSource, parquetSource } from '../estimate/table.js';
 import { folderSource, openResults } from '../results/open.js';
 
@@ -64,7 +64,9 @@ export function estimateCommand(program: Command): void {
       else {
         console.log(planText(results));
         if (folder !== undefined)
-          console.log(`\nWritten to ${folder}: estimates.csv, estimates_summary.csv, estimates.json; rerun them by panel.R or panel.py.`);
+          console.log(
+            `\nWritten to ${folder}: estimates.csv, estimates_summary.csv, estimates.json; rerun them by panel.R or panel.py.`,
+          );
       }
     });
 }

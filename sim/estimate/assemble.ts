@@ -23,6 +23,8 @@ export interface Assembled {
   readonly singletons: number;
   /** Distinct households, null without such a column. */
   readonly households: number | null;
+  /** Households of the survey draw, null where everyone is taken. */
+  readonly drawn: readonly number[] | null;
   readonly notes: readonly string[];
 }
 
@@ -37,6 +39,7 @@ export interface Assembled {
 export function assemble(frame: Frame, estimate: Estimate, place: string, seed: string, replicate: number): Assembled {
   const notes: string[] = [];
   let rows = filtered(frame, estimate);
+  let drawnHouseholds: readonly number[] | null = null;
   if (rows.length === 0) {
     refuse('empty-sample', place, `no row passes where: ${JSON.stringify(estimate.where)}`, 'widen the filter');
   }
@@ -58,6 +61,7 @@ export function assemble(frame: Frame, estimate: Estimate, place: string, seed: 
       );
     }
     rows = drawn.rows;
+    drawnHouseholds = drawn.households;
   }
   const chosen = rows.length;
 
@@ -153,6 +157,7 @@ export function assemble(frame: Frame, estimate: Estimate, place: string, seed: 
     missing,
     singletons,
     households,
+    drawn: drawnHouseholds,
     notes,
   };
 }

@@ -15,7 +15,8 @@ export interface Survey {
 export interface Drawn {
   /** Rows of the households drawn, ascending. */
   readonly rows: Int32Array;
-  readonly households: number;
+  /** Households drawn, ascending within place. */
+  readonly households: readonly number[];
   /** Places that had fewer households than asked for. */
   readonly short: number;
   /** Places there were to draw from. */
@@ -58,18 +59,18 @@ export function drawSurvey(
   const ordered = [...members.keys()].sort((a, b) => a - b);
   const chosen = some(ordered, survey.places, random);
   let short = 0;
-  let count = 0;
+  const taken: number[] = [];
   const sample = new Map<number, Set<number>>();
   for (const p of chosen.sort((a, b) => a - b)) {
     const all = [...(members.get(p) as Set<number>)].sort((a, b) => a - b);
     if (all.length < survey.households_per_place) short++;
     const set = new Set(some(all, survey.households_per_place, random));
-    count += set.size;
+    taken.push(...[...set].sort((a, b) => a - b));
     sample.set(p, set);
   }
   const kept: number[] = [];
   for (const i of rows) if (sample.get(places[i])?.has(households[i])) kept.push(i);
-  return { rows: Int32Array.from(kept), households: count, short, available: ordered.length };
+  return { rows: Int32Array.from(kept), households: taken, short, available: ordered.length };
 }
 
 /** `count` of a list without replacement (all when it is shorter), by a partial Fisher–Yates shuffle. */

@@ -5,7 +5,8 @@ import type { EstimateResult, PlanResults } from './run.js';
 
 /** `estimates.json`: every regression, the summaries over replicates, what failed. */
 export function estimatesJson(results: PlanResults, head: Readonly<Record<string, unknown>> = {}): string {
-  return `${JSON.stringify({ ...head, ...results }, null, 2)}\n`;
+  const { estimates, summary, failed } = results;
+  return `${JSON.stringify({ ...head, estimates, summary, failed }, null, 2)}\n`;
 }
 
 const CSV_COLUMNS = [
@@ -68,6 +69,15 @@ export function summaryCsv(results: PlanResults): string {
     summary.terms.map((term) => SUMMARY_COLUMNS.map((name) => ({ ...summary, ...term })[name])),
   );
   return csv(SUMMARY_COLUMNS, rows);
+}
+
+/** Households each survey draw took, one a row; undefined when nothing was drawn. */
+export function drawsCsv(results: PlanResults): string | undefined {
+  if (results.draws.length === 0) return undefined;
+  return csv(
+    ['name', 'arm', 'replicate', 'household'],
+    results.draws.flatMap((draw) => draw.households.map((id) => [draw.name, draw.arm, draw.replicate, id])),
+  );
 }
 
 function csv(header: readonly string[], rows: readonly (readonly unknown[])[]): string {

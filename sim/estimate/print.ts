@@ -95,7 +95,9 @@ function summaryText(summary: EstimateSummary, results: readonly EstimateResult[
     );
   const dropped = new Map(results.flatMap((r) => r.dropped.map((d) => [`${d.term} ${d.why}`, d])));
   for (const text of dropped.keys()) lines.push(`Dropped: ${text}.`);
-  return [...lines, ...summary.notes].join('\n').trimEnd();
+  // what was said of every replicate alike
+  const said = results[0].notes.filter((note) => results.every((result) => result.notes.includes(note)));
+  return [...lines, ...said, ...summary.notes].join('\n').trimEnd();
 }
 
 function heading(name: string, arm: string | null): string {

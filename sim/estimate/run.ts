@@ -30,6 +30,14 @@ export interface EstimateResult extends Omit<Fit, 'covariance' | 'df'> {
   readonly level: number;
 }
 
+/** Households a survey draw took. */
+export interface SurveyDraw {
+  readonly name: string;
+  readonly arm: string | null;
+  readonly replicate: number | null;
+  readonly households: readonly number[];
+}
+
 /** An estimate that could not be had in one arm and replicate. */
 export interface EstimateFailure extends Problem {
   readonly name: string;
@@ -42,6 +50,7 @@ export interface PlanResults {
   readonly failed: readonly EstimateFailure[];
   /** One an estimate and arm, over replicates. */
   readonly summary: readonly EstimateSummary[];
+  readonly draws: readonly SurveyDraw[];
 }
 
 export interface RunOptions {
@@ -84,6 +93,7 @@ export async function runEstimates(
   });
   const results: EstimateResult[] = [];
   const failed: EstimateFailure[] = [];
+  const draws: SurveyDraw[] = [];
   let done = 0;
   for (const { estimate, i, arms, replicate } of jobs) {
     options.onProgress?.(done++, jobs.length, estimate.name);
@@ -98,7 +108,8 @@ export async function runEstimates(
       const names = columnsOfEstimate(estimate, source.kinds);
       const frame = await source.read(names, arms, replicate);
       const made = assemble(frame, estimate, `${where})`, seed, replicate ?? 0);
-      const { sample, chosen, missingRows, missing, singletons, households, notes } = made;
+      const { sample, chosen, missingRows, missing, singletons, households, drawn, notes } = made;
+      if (drawn !== null) draws.push({ name: estimate.name, arm, replicate, households: drawn });
       const fit = estimate.method === 'iv' ? iv(sample) : estimate.method === 'logit' ? logit(sample) : ols(sample);
       const { covariance: _, df, ...rest } = fit;
       results.push({
@@ -126,7 +137,7 @@ export async function runEstimates(
     (failure) => !results.some((result) => result.name === failure.name && result.arm === failure.arm),
   );
   if (hopeless.length > 0) throw new InputError(oncePerArm(hopeless));
-  return { estimates: results, failed, summary: estimates.flatMap((e) => summarise(e, results, failed)) };
+  return { estimates: results, failed, summary: estimates.flatMap((e) => summarise(e, results, failed)), draws };
 }
 
 /** The first failure of each estimate and arm: the other replicates only repeat it. */
