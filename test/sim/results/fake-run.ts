@@ -17,6 +17,8 @@ export interface FakeRun {
   readonly arms: readonly string[];
   readonly replicates: number;
   readonly tiesChange?: boolean;
+  /** Counted numbers and no ties, for tests that need many rows. */
+  readonly plain?: boolean;
 }
 
 export const FACTS: Facts = {
@@ -49,10 +51,10 @@ const MODEL: Model = {
 
 const PLACE_NAMES = ['Oak "Hill", north', 'Mill\nbridge', 'Ford'];
 
-/** About two ties a household; the last household has none. */
-function randomTies(n: number, random: () => number): Ties {
+/** About so many ties a household; the last household has none. */
+function randomTies(n: number, random: () => number, perHousehold: number): Ties {
   const pairs = new Set<number>();
-  for (let e = 0; e < 2 * n; e++) {
+  for (let e = 0; e < perHousehold * n; e++) {
     const a = Math.floor(random() * (n - 1));
     const b = Math.floor(random() * (n - 1));
     if (a !== b) pairs.add(Math.min(a, b) * n + Math.max(a, b));
@@ -80,11 +82,13 @@ export function playArm(
     const r = random();
     return r < 0.1 ? AWKWARD[Math.floor(random() * AWKWARD.length)] : r < 0.2 ? 1 : Math.exp(10 * r);
   };
-  const numbers = (): Float64Array => Float64Array.from({ length: n }, number);
-  const bytes = (k: number): Uint8Array => Uint8Array.from({ length: n }, () => Math.floor(random() * k));
+  const plain = run.plain === true;
+  const counted = Float64Array.from({ length: n }, (_, i) => i + 1);
+  const numbers = (): Float64Array => (plain ? counted : Float64Array.from({ length: n }, number));
+  const bytes = (k: number): Uint8Array => Uint8Array.from({ length: n }, (_, i) => (plain ? i % k : random() * k));
   const place = Uint32Array.from({ length: n }, (_, i) => i % 3);
   const group = Uint32Array.from({ length: n }, (_, i) => (i % 5 === 0 ? 1 : 0));
-  let ties = randomTies(n, random);
+  let ties = randomTies(n, random, plain ? 0 : 2);
   on.starts({
     arm: run.arms[armIndex],
     armIndex,
@@ -122,8 +126,8 @@ export function playArm(
     columns.reached.set(bytes(3));
     columns.isolated.set(bytes(2));
     const changed = t === 0 || (run.tiesChange === true && t % 2 === 1);
-    if (changed && t > 0) ties = randomTies(n, random);
-    const pocket = Int32Array.from({ length: n }, () => Math.floor(random() * 4) - 1);
+    if (changed && t > 0) ties = randomTies(n, random, 2);
+    const pocket = Int32Array.from(bytes(4), (k) => k - 1);
     const extras: Extras = {
       pocket,
       pocket_role: { codes: Uint8Array.from(pocket, (p) => (p < 0 ? 255 : p % 2)), names: ['core', 'fringe'] },
