@@ -6,6 +6,11 @@
  */
 import { log } from '../../network/elementary.js';
 import type { Ties, Uniform } from '../../network/graph.js';
+import { assortativity } from '../../network/measure/assortativity.js';
+import { type EconomicConnectedness, economicConnectedness } from '../../network/measure/economic-connectedness.js';
+import { type JoinCount, joinCounts } from '../../network/measure/join-counts.js';
+import { type Moran, moran } from '../../network/measure/moran.js';
+import type { Causes } from './cause.js';
 import { dipPValue, dip as hartigansDip } from './dip.js';
 import { duclosEstebanRay } from './duclos-esteban-ray.js';
 import { type RatioMeasures, ratioMeasures, theilTBetween } from './entropy.js';
@@ -16,8 +21,12 @@ import { lorenz } from './lorenz.js';
 import { line, upwardMobility } from './mobility.js';
 import { densityModes } from './modes.js';
 import { averageRanks } from './order.js';
+import type { PocketCensus } from './pocket-tracker.js';
 import { quantileOfSorted } from './quantile.js';
 import { type Sample, sampleOf } from './sample.js';
+import { variance } from './spread.js';
+import { type TieFacts, tieFacts } from './tie-facts.js';
+import { joinCountNull, moranNull } from './tie-null.js';
 import { wolfson } from './wolfson.js';
 
 /** What one generation of one arm is measured from. Arrays are read, never kept or changed. */
@@ -45,10 +54,20 @@ export interface IndicatorInput {
     readonly rank?: Float64Array | undefined;
     readonly logWealth?: Float64Array | undefined;
   } | null;
-  /** Random permutations for p-values. */
+  /**
+   * Measures of the ties and permutations of tests over them, from `tieFacts`: give the same object for every
+   * generation while ties do not change. Made from `permutations` and `uniform` when left out, which costs more than
+   * all the rest of a row.
+   */
+  readonly tieFacts?: TieFacts | undefined;
+  /** Random permutations for p-values; used only without `tieFacts`. */
   readonly permutations: number;
-  /** Stream the permutations are drawn from. */
+  /** Stream the permutations are drawn from; used only without `tieFacts`. */
   readonly uniform: Uniform;
+  /** Pockets of the generation, from a `PocketTracker`; null or left out where there is no decision. */
+  readonly pockets?: PocketCensus | null | undefined;
+  /** Causes of frustration, from `causesOf`; null or left out where they were not worked out. */
+  readonly causes?: Causes | null | undefined;
 }
 
 /** A generation with the pieces that several indicators share, each made when first asked for. */
@@ -62,6 +81,10 @@ export class IndicatorContext {
   #ratios: RatioMeasures | undefined;
   #curve: Float64Array | undefined;
   #dip: number | undefined;
+  #ties: TieFacts | undefined;
+  #moran: Moran | undefined;
+  #joins: JoinCount | undefined;
+  #connectedness: EconomicConnectedness | undefined;
 
   constructor(input: IndicatorInput) {
     this.input = input;
@@ -117,6 +140,30 @@ export class IndicatorContext {
     return this.#curve;
   }
 
+  /** What is known of the ties alone. */
+  get ties(): TieFacts {
+    const { ties, place, group, permutations, uniform } = this.input;
+    this.#ties ??= this.input.tieFacts ?? tieFacts(ties, place, group, permutations, uniform);
+    return this.#ties;
+  }
+
+  /** Moran's I of log wealth, row-standardised weights. */
+  get moran(): Moran {
+    this.#moran ??= moran(this.input.ties, this.logWealth, 'row');
+    return this.#moran;
+  }
+
+  /** Ties between two frustrated households, binary weights. */
+  get joins(): JoinCount {
+    this.#joins ??= joinCounts(this.input.ties, decisionOf(this).frustrated, 'binary').marked;
+    return this.#joins;
+  }
+
+  get connectedness(): EconomicConnectedness {
+    this.#connectedness ??= economicConnectedness(this.input.ties, this.input.wealth, this.input.place);
+    return this.#connectedness;
+  }
+
   /** Dip of log wealth. */
   get dip(): number {
     this.#dip ??= hartigansDip(this.sortedLog).dip;
@@ -125,7 +172,7 @@ export class IndicatorContext {
 }
 
 /** What an indicator cannot do without; its cell is empty where that is missing. */
-export type Need = 'wealth' | 'decision' | 'parent' | 'ties';
+export type Need = 'wealth' | 'decision' | 'parent' | 'ties' | 'pockets' | 'causes';
 
 /** One column of `indicators.csv`. */
 export interface Indicator {
@@ -370,6 +417,234 @@ export const INDICATORS: readonly Indicator[] = [
     needs: ['decision'],
     of: (c) => meanAspirationGap(c.input.wealth, decisionOf(c).aspiration),
   },
+  {
+    name: 'join_count',
+    meaning: 'Ties between two frustrated households',
+    formula: 'Σ over ties of frustrated_i · frustrated_j',
+    source: 'Cliff and Ord 1981, pp. 19–20',
+    unit: 'count',
+    needs: ['decision', 'ties'],
+    of: (c) => c.joins.count,
+  },
+  {
+    name: 'join_count_expected',
+    meaning: 'Expected ties between frustrated households if the same number were scattered over the tied households',
+    formula: 'ties · f (f − 1) / (n (n − 1)), f frustrated among n tied households',
+    source: 'Cliff and Ord 1981, pp. 19–20',
+    unit: 'count',
+    needs: ['decision', 'ties'],
+    of: (c) => c.joins.expected,
+  },
+  {
+    name: 'join_count_z',
+    meaning: 'Join count above its expectation, in standard deviations of that scattering',
+    formula: '(count − expected) / √variance, nonfree sampling',
+    source: 'Cliff and Ord 1981, pp. 19–20',
+    unit: 'index',
+    needs: ['decision', 'ties'],
+    of: (c) => c.joins.z,
+  },
+  {
+    name: 'join_count_p',
+    meaning: 'Permutation p-value of as many ties between frustrated households or more',
+    formula: '(1 + permutations with at least as many) / (1 + permutations)',
+    source: 'Cliff and Ord 1981',
+    unit: 'probability',
+    needs: ['decision', 'ties'],
+    of: (c) => joinCountNull(c.ties.list, decisionOf(c).frustrated, c.ties.plan).p,
+  },
+  {
+    name: 'moran',
+    meaning: 'Moran’s I of log wealth over the ties, row-standardised weights, households without ties left out',
+    formula: '(n / S0) Σ w_ij z_i z_j / Σ z_i²',
+    source: 'Moran 1950; Cliff and Ord 1981',
+    unit: 'index',
+    needs: ['wealth', 'ties'],
+    of: (c) => c.moran.i,
+  },
+  {
+    name: 'moran_expected',
+    meaning: 'Expected Moran’s I without dependence',
+    formula: '−1 / (n − 1)',
+    source: 'Cliff and Ord 1981',
+    unit: 'index',
+    needs: ['wealth', 'ties'],
+    of: (c) => c.moran.expected,
+  },
+  {
+    name: 'moran_p',
+    meaning: 'Two-sided permutation p-value of Moran’s I',
+    formula: '(1 + permutations as far from the expectation) / (1 + permutations)',
+    source: 'Cliff and Ord 1981',
+    unit: 'probability',
+    needs: ['wealth', 'ties'],
+    of: (c) => moranNull(c.ties.list, c.logWealth, c.moran.i, c.ties.plan).p,
+  },
+  {
+    name: 'assortativity_wealth',
+    meaning: 'Assortativity of wealth: correlation of wealth at the two ends of a tie',
+    formula: 'correlation over tie ends',
+    source: 'Newman 2003, eq. 21',
+    unit: 'index',
+    needs: ['wealth', 'ties'],
+    of: ({ input }) => assortativity(input.ties, input.wealth),
+  },
+  {
+    name: 'assortativity_rank',
+    meaning: 'Assortativity of wealth rank',
+    formula: 'correlation of ranks over tie ends, tied values sharing their average rank',
+    source: 'Newman 2003, eq. 21',
+    unit: 'index',
+    needs: ['wealth', 'ties'],
+    of: (c) => assortativity(c.input.ties, c.rank),
+  },
+  {
+    name: 'assortativity_group',
+    meaning: 'Assortativity by social group',
+    formula: '(Σ e_gg − Σ a_g²) / (1 − Σ a_g²)',
+    source: 'Newman 2003, eq. 2',
+    unit: 'index',
+    needs: ['ties'],
+    of: (c) => c.ties.assortativityGroup,
+  },
+  {
+    name: 'assortativity_place',
+    meaning: 'Assortativity by place',
+    formula: '(Σ e_pp − Σ a_p²) / (1 − Σ a_p²)',
+    source: 'Newman 2003, eq. 2',
+    unit: 'index',
+    needs: ['ties'],
+    of: (c) => c.ties.assortativityPlace,
+  },
+  {
+    name: 'coleman_group',
+    meaning:
+      'Coleman’s homophily index by social group: ties inside groups above chance, over the most they could exceed it',
+    formula: 'Σ ends_g (H_g − w_g) / Σ ends_g (1 − w_g)',
+    source: 'Coleman 1958',
+    unit: 'index',
+    needs: ['ties'],
+    of: (c) => c.ties.colemanGroup,
+  },
+  {
+    name: 'e_i_group',
+    meaning: 'E–I index by social group: external less internal ties, over all ties',
+    formula: '(E − I) / (E + I)',
+    source: 'Krackhardt and Stern 1988',
+    unit: 'index',
+    needs: ['ties'],
+    of: (c) => c.ties.externalInternalGroup,
+  },
+  {
+    name: 'economic_connectedness',
+    meaning: 'Economic connectedness: twice the share of above-median households among the ties of below-median ones',
+    formula: 'mean of 2 · above-median ties / ties over below-median households with ties',
+    source: 'Chetty et al. 2022',
+    unit: 'index',
+    needs: ['wealth', 'ties'],
+    of: (c) => c.connectedness.connectedness,
+  },
+  {
+    name: 'exposure',
+    meaning: 'Exposure: twice the share of above-median households in the places of below-median ones',
+    formula: 'mean of 2 · above-median share of the place over below-median households with ties',
+    source: 'Chetty et al. 2022',
+    unit: 'index',
+    needs: ['wealth', 'ties'],
+    of: (c) => c.connectedness.exposure,
+  },
+  {
+    name: 'friending_bias',
+    meaning: 'Friending bias: how far ties of below-median households fall short of what their place offers',
+    formula: 'mean over places, by their households, of 1 − connectedness / exposure',
+    source: 'Chetty et al. 2022',
+    unit: 'index',
+    needs: ['wealth', 'ties'],
+    of: (c) => c.connectedness.friendingBias,
+  },
+  {
+    name: 'pockets',
+    meaning: 'Pockets of frustration, significant or not',
+    formula: 'connected components of core households with at least min_size of them',
+    source: 'this project',
+    unit: 'count',
+    needs: ['decision', 'pockets'],
+    of: (c) => pocketsOf(c).pockets,
+  },
+  {
+    name: 'pocket_share',
+    meaning: 'Share of households that are core members of a pocket',
+    formula: 'core members of pockets / n',
+    source: 'this project',
+    unit: 'share',
+    needs: ['decision', 'pockets'],
+    of: (c) => pocketsOf(c).pocketShare,
+  },
+  {
+    name: 'pocket_p',
+    meaning:
+      'Permutation p-value of the share of core households (in a pocket or not); empty while nobody has been frustrated for long enough',
+    formula: '(1 + permutations with at least as many core households) / (1 + permutations)',
+    source: 'this project',
+    unit: 'probability',
+    needs: ['decision', 'pockets'],
+    of: (c) => pocketsOf(c).pValue,
+  },
+  {
+    name: 'sheltered_share',
+    meaning: 'Share of households that are satisfied now and would be frustrated under the society-wide mean',
+    formula: 'mean of sheltered',
+    source: 'this project',
+    unit: 'share',
+    needs: ['decision', 'causes'],
+    of: (c) => shareFrustrated(causesOfContext(c).sheltered),
+  },
+  {
+    name: 'complacent_share',
+    meaning: 'Share of households that are satisfied, yet grow more slowly than they would under the society-wide mean',
+    formula: 'mean of complacent',
+    source: 'this project',
+    unit: 'share',
+    needs: ['decision', 'causes'],
+    of: (c) => shareFrustrated(causesOfContext(c).complacent),
+  },
+  {
+    name: 'core_share',
+    meaning: 'Share of households that are core: long frustrated, with frustrated company',
+    formula: 'core households / n',
+    source: 'this project',
+    unit: 'share',
+    needs: ['decision', 'pockets'],
+    of: (c) => pocketsOf(c).coreShare,
+  },
+  {
+    name: 'significant_pockets',
+    meaning: 'Pockets that are more than chance at the 5 % level',
+    formula: 'pockets with p ≤ 0.05',
+    source: 'this project',
+    unit: 'count',
+    needs: ['decision', 'pockets'],
+    of: (c) => pocketsOf(c).significant,
+  },
+  {
+    name: 'local_share',
+    meaning:
+      'Share of households that are frustrated by their own reference and would meet a milestone under the society-wide mean',
+    formula: 'mean of cause = local',
+    source: 'this project',
+    unit: 'share',
+    needs: ['decision', 'causes'],
+    of: (c) => localShare(causesOfContext(c)),
+  },
+  {
+    name: 'sd_log_wealth',
+    meaning: 'Standard deviation of log wealth',
+    formula: '√ of the mean squared deviation of ln y',
+    source: 'definition',
+    unit: 'index',
+    needs: ['wealth'],
+    of: (c) => sdOfLogs(c),
+  },
 ];
 
 function parentOf({ input }: IndicatorContext): NonNullable<IndicatorInput['parent']> {
@@ -380,6 +655,26 @@ function parentOf({ input }: IndicatorContext): NonNullable<IndicatorInput['pare
 function decisionOf({ input }: IndicatorContext): NonNullable<IndicatorInput['decision']> {
   if (input.decision === null) throw new Error('this indicator needs a decision');
   return input.decision;
+}
+
+function pocketsOf({ input }: IndicatorContext): PocketCensus {
+  if (!input.pockets) throw new Error('this indicator needs the pockets of the generation');
+  return input.pockets;
+}
+
+function causesOfContext({ input }: IndicatorContext): Causes {
+  if (!input.causes) throw new Error('this indicator needs the causes of frustration');
+  return input.causes;
+}
+
+function localShare({ cause }: Causes): number {
+  let local = 0;
+  for (let i = 0; i < cause.length; i++) if (cause[i] === 1) local++;
+  return local / cause.length;
+}
+
+function sdOfLogs({ sortedLog }: IndicatorContext): number {
+  return Math.sqrt(variance(sortedLog));
 }
 
 function logsOfParent(context: IndicatorContext): Float64Array {
@@ -401,7 +696,10 @@ export function indicatorRow(context: IndicatorContext): Float64Array {
   for (let k = 0; k < row.length; k++) {
     const { needs, of } = INDICATORS[k];
     const missing =
-      (input.decision === null && needs.includes('decision')) || (input.parent === null && needs.includes('parent'));
+      (input.decision === null && needs.includes('decision')) ||
+      (input.parent === null && needs.includes('parent')) ||
+      (!input.pockets && needs.includes('pockets')) ||
+      (!input.causes && needs.includes('causes'));
     row[k] = missing ? NaN : of(context);
   }
   return row;

@@ -1,8 +1,12 @@
 import { describe, expect, test } from 'vitest';
 import { fromPairs } from '../../../network/graph.js';
+import { causesOf } from '../../../sim/measure/cause.js';
 import { gini } from '../../../sim/measure/gini.js';
 import { INDICATORS, IndicatorContext, type IndicatorInput, indicatorRow } from '../../../sim/measure/indicators.js';
 import { elasticity, rankRankSlope } from '../../../sim/measure/mobility.js';
+import { PocketTracker, pocketPlan } from '../../../sim/measure/pocket-tracker.js';
+import { POCKET_RULE } from '../../../sim/measure/pockets.js';
+import { tieFacts } from '../../../sim/measure/tie-facts.js';
 import { stream } from '../../../sim/random/stream.js';
 
 /** The columns of indicators.csv, in their order, as the files contract names them. */
@@ -47,14 +51,28 @@ function input(change: Partial<IndicatorInput> = {}): IndicatorInput {
   };
 }
 
+/** The generation's pockets and causes, made up. */
+function withPockets(): Partial<IndicatorInput> {
+  const rule = { ...POCKET_RULE, permutations: 19 };
+  const tracker = new PocketTracker(rule, pocketPlan(rule, place, stream('indicators', 0, 'pockets')));
+  const { decision } = input();
+  const frustrated = decision!.frustrated;
+  tracker.generation({ frustrated, wealth, place, ties: ring });
+  const pockets = tracker.generation({ frustrated, wealth, place, ties: ring });
+  const met = Uint8Array.from({ length: n }, (_, i) => (i < 10 || i >= 30 ? 1 : 0));
+  const slow = Float64Array.from({ length: n }, (_, i) => (i >= 40 ? 1.1 : 1.2));
+  return { pockets, causes: causesOf(frustrated, met, slow, new Float64Array(n).fill(1.2)) };
+}
+
 function named(row: Float64Array): Record<string, number> {
   return Object.fromEntries(INDICATORS.map(({ name }, k) => [name, row[k]]));
 }
 
 describe('the registry', () => {
-  test('has the columns of the contract in their order', () => {
+  test('has the columns of the contract in their order, then more', () => {
     const names = INDICATORS.map(({ name }) => name);
-    expect(names).toEqual(COLUMNS.filter((column) => names.includes(column)));
+    expect(names.slice(0, COLUMNS.length)).toEqual(COLUMNS);
+    expect(new Set(names).size).toBe(names.length);
   });
 
   test('describes every column', () => {
@@ -66,13 +84,27 @@ describe('the registry', () => {
 
 describe('a row', () => {
   test('agrees with the measures it is made of', () => {
-    const row = named(indicatorRow(new IndicatorContext(input())));
+    const row = named(indicatorRow(new IndicatorContext(input(withPockets()))));
     expect(row['gini']).toBe(gini(wealth));
     expect(row['share_frustrated']).toBeCloseTo(1 / 3, 12);
     expect(row['mean_aspiration_gap']).toBeCloseTo(1 / 3, 12);
     expect(row['elasticity']).toBeCloseTo(elasticity(parent, wealth).slope, 12);
     expect(row['rank_rank_slope']).toBeCloseTo(rankRankSlope(parent, wealth).slope, 12);
     expect(row['theil_t_between_places']).toBeLessThan(row['theil_t']);
+    // twenty frustrated in a row on a ring: 19 ties between them, the expected number 60 · 20 · 19 / (60 · 59)
+    expect(row['join_count']).toBe(19);
+    expect(row['join_count_expected']).toBeCloseTo((20 * 19) / 59, 12);
+    expect(row['join_count_p']).toBe(1 / 20);
+    expect(row['pockets']).toBe(1);
+    // the ends of the row have one of two ties frustrated, which is half: all twenty are core
+    expect(row['pocket_share']).toBeCloseTo(1 / 3, 12);
+    expect(row['core_share']).toBeCloseTo(1 / 3, 12);
+    expect(row['pocket_p']).toBe(1 / 20);
+    expect(row['significant_pockets']).toBe(1);
+    expect(row['sheltered_share']).toBeCloseTo(10 / 60, 12);
+    expect(row['complacent_share']).toBeCloseTo(20 / 60, 12);
+    expect(row['local_share']).toBeCloseTo(10 / 60, 12);
+    expect(row['e_i_group']).toBe(1);
     for (const [name, value] of Object.entries(row)) expect(Number.isFinite(value), name).toBe(true);
   });
 
@@ -84,6 +116,14 @@ describe('a row', () => {
       if (needs.includes('parent')) expect(first[name], name).toBeNaN();
     }
     expect(last['gini']).toBe(gini(wealth));
+  });
+
+  test('facts of the ties handed in once give the same row', () => {
+    const uniform = stream('indicators', 0, 'permutations');
+    const facts = tieFacts(ring, place, group, 19, uniform);
+    expect(indicatorRow(new IndicatorContext(input({ tieFacts: facts })))).toEqual(
+      indicatorRow(new IndicatorContext(input())),
+    );
   });
 
   test('ranks and logs handed on from the generation before give the same row', () => {
