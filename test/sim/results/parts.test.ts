@@ -166,7 +166,6 @@ describe('the panel', () => {
       ['a', 0, 2, 2, 22000],
     ]);
     const { rows, columns } = await panel.read({
-      replicates: [1],
       generations: [1, 1],
       columns: ['household', 'wealth'],
     });
