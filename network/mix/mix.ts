@@ -55,8 +55,8 @@ function mixShare(ties: Ties, spec: MixShare, uniform: Uniform): MixResult {
     reached,
     tried: count.tried,
     accepted: count.accepted,
-    // two ties: a swap moves them in pairs, so the last odd one may stay
-    outOfReach: m > 0 && share - reached > Math.max(TOLERANCE, 2 / m),
+    // a share is of whole ties, so the nearest may be half a tie off
+    outOfReach: m > 0 && share - reached > Math.max(TOLERANCE, 1 / m),
     rewirable: count.accepted > 0 || rewirable(slots, uniform),
   };
 }
