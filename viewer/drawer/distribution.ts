@@ -164,6 +164,8 @@ export function distributionPanel(app: App): TemplateResult {
           title: `Growth incidence, generation ${t}`,
           described: `Growth factor of each percentile of wealth from generation ${t} to ${t + 1}, mean of all replicates with 95 % Monte-Carlo band.`,
           xSays: 'percentile of wealth',
+          xRange: [0, 100],
+          xTicks: [0, 50, 100],
           ySays: 'growth factor',
           xNames: (v) => String(v),
           yNames: (v) => String(Number(v.toPrecision(3))),
@@ -177,7 +179,7 @@ export function distributionPanel(app: App): TemplateResult {
       shown(
         app,
         `transitions-${t}`,
-        'Quintile of parent (down) and child (across), %',
+        'Quintiles, parent to child, %',
         transitionsFigure(size, got.transitions, `Transitions between quintiles, generation ${t} to ${t + 1}`),
       ),
     );

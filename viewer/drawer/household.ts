@@ -96,15 +96,13 @@ export function householdPanel(app: App): TemplateResult {
       ${shown(
         app,
         `household-${view.household}-reference`,
-        'Whom it sees',
+        `Whom it sees: ${model.milestones.map((_, m) => mixInWords(model, m)).join('; then ')}`,
         referenceFigure(
           { width: units(app, 0.335, 20).width, height: 68 },
           { own: arm.now.wealth[i], neighbours, aspirations, frustrated, society: usesSociety ? society : NaN },
         ),
       )}
-      <p class="note mix">${model.milestones.map((_, m) => mixInWords(model, m)).join('; then ')}${
-        arm.now.isolated[i] === 1 ? '. It has no ties: its own wealth stands in.' : ''
-      }</p>
+      ${arm.now.isolated[i] === 1 ? html`<p class="note">It has no ties: its own wealth stands in.</p>` : nothing}
       ${whatIf(app, problem, society)}
     </div>
   </div>`;
@@ -127,20 +125,20 @@ function whatIf(app: App, problem: Problem, society: number): TemplateResult {
   const does = (met: number): string => (met > 0 ? 'within reach' : 'out of reach');
   const cause =
     now.met === 0 && asAll.met > 0
-      ? 'the cause is local'
+      ? 'a local cause'
       : now.met === 0
-        ? 'the cause is general'
+        ? 'a general cause'
         : asAll.met === 0
-          ? 'it is sheltered by whom it sees'
+          ? 'it is sheltered'
           : asAll.planned > now.planned
-            ? 'it would plan for more'
-            : 'it would not plan for more';
+            ? 'it would plan more'
+            : 'no more ambitious';
   const elsewhere = other.now.decided ? other.now.aspirations.map((a) => a[i]) : null;
   const fits = elsewhere !== null && elsewhere.length === problem.aspirations.length;
   const asThere = fits ? decide({ ...problem, aspirations: elsewhere }) : null;
   const enough = wealthThatWouldDo(problem);
   const row = (asks: string, aspiration: number, met: number, so: string): TemplateResult => html`<li>
-    <b>${asks}</b> aspires to ${amount(aspiration)}, ${does(met)}${so === '' ? nothing : html`: ${so}`}
+    <b>${asks}</b> aspiration ${amount(aspiration)}, ${does(met)}${so === '' ? nothing : html`; ${so}`}
   </li>`;
   const recorded = arm.now.cause[i];
   const differs =
@@ -148,13 +146,13 @@ function whatIf(app: App, problem: Problem, society: number): TemplateResult {
       ? ' (the results say otherwise)'
       : '';
   return html`<div class="what-if">
-    <h3>What if</h3>
+    <h3 class="hidden-text">What if</h3>
     <ul>
-      ${row('everyone alike:', wide[0], asAll.met, `${cause}${differs}`)}
-      ${asThere === null || elsewhere === null ? nothing : row(`as in ${other.name}:`, elsewhere[0], asThere.met, '')}
+      ${row('If it saw everyone:', wide[0], asAll.met, `${cause}${differs}`)}
+      ${asThere === null || elsewhere === null ? nothing : row(`As in ${other.name}:`, elsewhere[0], asThere.met, '')}
       ${
         Number.isFinite(enough)
-          ? html`<li><b>richer:</b> with ${amount(enough)} instead of ${amount(problem.wealth)} it would reach for it</li>`
+          ? html`<li><b>If richer:</b> with ${amount(enough)} instead of ${amount(problem.wealth)} it would reach for it</li>`
           : nothing
       }
     </ul>

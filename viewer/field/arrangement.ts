@@ -53,18 +53,24 @@ export function onLadder(sideways: Float32Array, wealth: Float64Array, axis: Axi
  */
 export function onMap(layout: Float32Array, area: Area): Float32Array {
   const n = layout.length / 2;
-  // the farthest few would shrink everyone else: fit all but the outermost 0.2 % and let those be cut at the edge
+  // the farthest few would shrink everyone else: fit all but the outermost 1 % each way, and draw those in the margin
   const [x0, x1] = reach(layout, 0);
   const [y0, y1] = reach(layout, 1);
-  const wide = area.width - 2 * area.side;
-  const high = area.height - area.top - area.bottom;
+  const margin = area.side * 1.5;
+  const wide = area.width - 2 * area.side - 2 * margin;
+  const high = area.height - area.top - area.bottom - 2 * margin;
   const scale = Math.min(wide / Math.max(x1 - x0, 1e-6), high / Math.max(y1 - y0, 1e-6));
   const out = new Float32Array(2 * n);
+  // beyond the fitted box distances shrink smoothly, and the order outward stays
+  const inside = (v: number, half: number, room: number): number => {
+    const over = Math.abs(v) - half;
+    return over <= 0 ? v : Math.sign(v) * (half + room * (1 - Math.exp(-over / room)));
+  };
   for (let i = 0; i < n; i++) {
-    const x = area.side + wide / 2 + (layout[2 * i] - (x0 + x1) / 2) * scale;
-    const y = area.top + high / 2 + (layout[2 * i + 1] - (y0 + y1) / 2) * scale;
-    out[2 * i] = Math.max(area.side / 2, Math.min(area.width - area.side / 2, x));
-    out[2 * i + 1] = Math.max(area.top / 2, Math.min(area.height - area.bottom / 2, y));
+    const x = (layout[2 * i] - (x0 + x1) / 2) * scale;
+    const y = (layout[2 * i + 1] - (y0 + y1) / 2) * scale;
+    out[2 * i] = area.width / 2 + inside(x, wide / 2, margin);
+    out[2 * i + 1] = area.top + (area.height - area.top - area.bottom) / 2 + inside(y, high / 2, margin);
   }
   return out;
 }
@@ -74,7 +80,7 @@ function reach(layout: Float32Array, offset: number): [number, number] {
   const values = new Float32Array(n);
   for (let i = 0; i < n; i++) values[i] = layout[2 * i + offset];
   values.sort();
-  const cut = Math.floor(n * 0.001);
+  const cut = Math.floor(n * 0.01);
   return [values[cut], values[n - 1 - cut]];
 }
 
@@ -89,7 +95,7 @@ export function axes(extents: readonly Float64Array[]): Axis[] {
   const each: Axis[] = [];
   let lowest = Infinity;
   let highest = -Infinity;
-  let widest = 0;
+  const widths: number[] = [];
   for (let t = 0; t < T; t++) {
     let low = Infinity;
     let high = -Infinity;
@@ -101,16 +107,18 @@ export function axes(extents: readonly Float64Array[]): Axis[] {
       low = Number.isFinite(low) ? low - 0.5 : 0;
       high = Number.isFinite(high) ? high + 0.5 : 1;
     }
-    each.push(padded(low, high));
+    each.push({ low, high });
     lowest = Math.min(lowest, low);
     highest = Math.max(highest, high);
-    widest = Math.max(widest, high - low);
+    widths.push(high - low);
   }
-  if (highest - lowest <= 1.3 * widest) return each.map(() => padded(lowest, highest));
-  // one width for all, so that the spreads of two generations can be compared by eye
+  const common = [...widths].sort((a, b) => a - b)[Math.floor(widths.length / 2)] ?? 1;
+  if (highest - lowest <= 1.35 * common) return each.map(() => padded(lowest, highest));
+  // one width wherever the households fit into it, so that the spreads of two generations can be compared by eye
   return each.map(({ low, high }) => {
     const middle = (low + high) / 2;
-    return padded(middle - widest / 2, middle + widest / 2);
+    const half = Math.max(common, high - low) / 2;
+    return padded(middle - half, middle + half);
   });
 }
 

@@ -119,6 +119,7 @@ export function dress(
   const inkTo = to.colours.map(rgb);
   const inkFrom = from.colours.map(rgb);
   const alpha = 232;
+  let changes = 0;
   for (let i = 0; i < n; i++) {
     const a = inkTo[to.of[i]];
     const b = inkFrom[from.of[i]];
@@ -136,13 +137,14 @@ export function dress(
     shape[4 * i + 2] = 51;
     const changed = now.decided && earlier?.decided === true && (now.met[i] === 0) !== (earlier.met[i] === 0);
     shape[4 * i + 3] = changed ? 255 : 0;
+    if (changed) changes++;
   }
   // open rings last: the frustrated are what the eye looks for
   const order = new Uint32Array(n);
   let at = 0;
   for (let i = 0; i < n; i++) if (shape[4 * i + 1] === 0) order[at++] = i;
   for (let i = 0; i < n; i++) if (shape[4 * i + 1] !== 0) order[at++] = i;
-  return { colourFrom, colourTo, shape, order };
+  return { colourFrom, colourTo, shape, order, changed: changes / Math.max(1, n) };
 }
 
 /** The legend of a colouring: which mark means what, always with the status shapes. */

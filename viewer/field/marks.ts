@@ -17,6 +17,8 @@ export interface Look {
   readonly shape: Uint8Array;
   /** Order of drawing, n household indices, last on top. */
   readonly order: Uint32Array;
+  /** Share of households that carry a halo. */
+  readonly changed: number;
 }
 
 /** Uniforms both programs of both fields read; one object each, written before a render. */

@@ -56,7 +56,7 @@ void main() {
   float d = length(gl_PointCoord * 2.0 - 1.0);
   float soft = fwidth(d);
   float disc = 1.0 - smoothstep(vRadius - soft, vRadius + soft * 0.25, d);
-  float inner = vRadius * 0.5 * smoothstep(0.0, 1.0, vHole);
+  float inner = vRadius * 0.46 * smoothstep(0.0, 1.0, vHole);
   float hole = vHole > 0.01 ? 1.0 - smoothstep(inner - soft * 0.6, inner + soft * 0.6, d) : 0.0;
   vec4 ink = vec4(vColour.rgb, 1.0) * vColour.a;
   vec4 mark = mix(ink, uPaper * 0.8, hole) * disc;

@@ -32,6 +32,8 @@ interface Field {
   index: KDBush | null;
   tiesDrawn: object | null;
   sleeves: { id: number; path: string; pValue: number }[];
+  /** Share of households whose status changed. */
+  changed: number;
 }
 
 const GLIDE = 620;
@@ -85,6 +87,7 @@ export class Stage {
       index: null,
       tiesDrawn: null,
       sleeves: [],
+      changed: 0,
     });
     this.#fields = [field('.field-left'), field('.field-right')];
     this.#wealth = part('.wealth');
@@ -299,13 +302,13 @@ export class Stage {
     const scene = this.#scene;
     if (scene === null) return;
     scene.arms.forEach((arm, k) => {
-      this.#fields[k].marks?.dress(
-        dress(arm.now, last === null ? null : last.arms[k].now, arm.earlier, scene.colouring, {
-          cast: arm.cast,
-          groupNames: scene.groupNames,
-          tokens: this.#tokens,
-        }),
-      );
+      const look = dress(arm.now, last === null ? null : last.arms[k].now, arm.earlier, scene.colouring, {
+        cast: arm.cast,
+        groupNames: scene.groupNames,
+        tokens: this.#tokens,
+      });
+      this.#fields[k].marks?.dress(look);
+      this.#fields[k].changed = look.changed;
     });
   }
 
@@ -372,7 +375,7 @@ export class Stage {
     const moving = this.busy || performance.now() < this.#moving;
     const n = left.marks.n;
     const size =
-      Math.max(1.15, Math.min(3.4 * (this.#rem / 13), 0.205 * Math.sqrt((left.box.width * left.box.height) / n))) *
+      Math.max(1.15, Math.min(3.4 * (this.#rem / 13), 0.228 * Math.sqrt((left.box.width * left.box.height) / n))) *
       Math.min(3, Math.sqrt(this.#camera.zoom));
     const most = Math.max(left.marks.ties, right.marks.ties);
     const ties = scene.tiesShown ? Math.min(most, moving ? Math.round(this.#sample) : 120000) : 0;
@@ -404,7 +407,10 @@ export class Stage {
   #haloNow(g: number): number {
     if (this.#glideStart >= 0) return 0.75 * g;
     const age = this.#arrived < 0 ? 1 : Math.min(1, (performance.now() - this.#arrived) / FADE);
-    return 0.75 - 0.47 * age;
+    // where most have changed, a circle round each would say nothing: let them go
+    const many = Math.max(this.#fields[0].changed, this.#fields[1].changed);
+    const quiet = many < 0.12 ? 0.3 : many < 0.3 ? 0.12 : 0;
+    return 0.75 + (quiet - 0.75) * age;
   }
 
   #drawPyramid(scene: Scene, g: number): void {

@@ -84,6 +84,14 @@ export function strip(data: StripData, events: StripEvents): TemplateResult {
         if (e.buttons === 1) toward(e);
       }}
     >
+      <div class="strip-names" aria-hidden="true">
+        ${Array.from(
+          { length: count },
+          (_, t) => html`<span class=${t === data.generation ? 'now' : t > data.reached ? 'ahead' : ''}
+            >${t === count - 1 ? `${t}\u00a0children` : t}</span
+          >`,
+        )}
+      </div>
       <svg viewBox=${`0 0 ${count * SLOT} ${HIGH}`} preserveAspectRatio="none" aria-hidden="true">
         ${Array.from({ length: count }, (_, t) => {
           const x = t * SLOT;
@@ -99,14 +107,6 @@ export function strip(data: StripData, events: StripEvents): TemplateResult {
             ${bar(data.shares[0][t], 0)}${bar(data.shares[1][t], 1)}</g>`;
         })}
       </svg>
-      <div class="strip-names" aria-hidden="true">
-        ${Array.from(
-          { length: count },
-          (_, t) => html`<span class=${t === data.generation ? 'now' : t > data.reached ? 'ahead' : ''}
-            >${t === count - 1 ? `${t}\u00a0children` : t}</span
-          >`,
-        )}
-      </div>
     </div>
   `;
 }

@@ -2,7 +2,8 @@
  * A line of descent: what each generation of a household had and aspired to, with its status marks.
  */
 import { scaleLinear, scaleLog } from 'd3-scale';
-import { at, figure, label, rule, type Size, short } from './figure.js';
+import { roundWealths } from './densities.js';
+import { at, figure, label, rule, type Size, short, spread } from './figure.js';
 
 export interface Descent {
   /** Wealth by generation 0 … T, T + 1 values. */

@@ -11,11 +11,11 @@ export interface Transition {
 
 export function transitionsFigure(size: Size, arms: readonly Transition[], title: string): string {
   const parts: string[] = [];
-  const gap = 34;
-  const cell = Math.min((size.width - 46 - gap * (arms.length - 1)) / (5 * arms.length), (size.height - 54) / 5);
+  const gap = 20;
+  const cell = Math.min((size.width - 52 - gap * (arms.length - 1)) / (5 * arms.length), (size.height - 54) / 5);
   const stay: string[] = [];
   arms.forEach((arm, k) => {
-    const x0 = 46 + k * (5 * cell + gap);
+    const x0 = 52 + k * (5 * cell + gap);
     const y0 = 20;
     parts.push(label(x0, 12, arm.name, 'start', 'f-head'));
     for (let r = 0; r < 5; r++) {
@@ -45,12 +45,16 @@ export function transitionsFigure(size: Size, arms: readonly Transition[], title
           );
       }
     }
-    parts.push(
-      label(x0, y0 + 5 * cell + 15, 'poorest', 'start', 'f-soft'),
-      label(x0 + 5 * cell, y0 + 5 * cell + 15, 'richest child', 'end', 'f-soft'),
-    );
+    const foot = y0 + 5 * cell + 15;
+    if (5 * cell > 112)
+      parts.push(
+        label(x0, foot, 'poorest', 'start', 'f-soft'),
+        label(x0 + 5 * cell, foot, 'richest child', 'end', 'f-soft'),
+      );
     stay.push(`${arm.name}: ${Math.round(100 * arm.share[0])} % of the poorest fifth's children stay in it`);
   });
+  if (5 * cell <= 112)
+    parts.push(label(52, 20 + 5 * cell + 15, 'child’s quintile, poorest to richest →', 'start', 'f-soft'));
   return figure(
     size,
     title,
