@@ -332,8 +332,9 @@ export function panelColumns(facts: Facts): PanelColumn[] {
       type: 'text',
       unit: '',
       meaning: 'Why a frustrated household is frustrated: local when only its own reference keeps it from a milestone.',
-      formula: 'general when also frustrated under the society-wide mean, else local',
-      missing: 'no cause was looked for: the household is not frustrated, or in no pocket',
+      formula:
+        'choice solved again with the society-wide mean as reference: general when frustrated under both, else local',
+      missing: 'the household is not frustrated',
     },
     sheltered: {
       type: 'flag',

@@ -2,7 +2,7 @@
  * Columns of result tables: what a column is (its field) and what it holds (its values).
  *
  * One convention for an empty cell in memory: NaN in numbers, a negative integer in integers and flags, a code
- * past the names in text. In files an empty cell is a null (Parquet) or nothing between commas (CSV). Knows
+ * past the names or of an empty name in text. In files an empty cell is a null (Parquet) or nothing between commas (CSV). Knows
  * nothing of households or files.
  */
 
@@ -23,7 +23,7 @@ export interface Field {
   readonly missing: string | null;
 }
 
-/** Text by number: row i reads `names[codes[i]]`; a code past the names is an empty cell. */
+/** Text by number: row i reads `names[codes[i]]`; a code past the names, or of an empty name, is an empty cell. */
 export interface Coded {
   readonly codes: Uint8Array | Uint16Array | Uint32Array;
   readonly names: readonly string[];
@@ -59,8 +59,9 @@ export function isConstant(column: Column): column is Constant {
 
 /** Value of row i, null when empty. For reading a few cells: encoders have their own loops. */
 export function cellAt(column: Column, i: number): number | string | null {
-  if (isConstant(column)) return column.value;
-  if (isCoded(column)) return column.names[column.codes[i]] ?? null;
+  if (isConstant(column)) return column.value === '' ? null : column.value;
+  // an empty text is an empty cell: CSV could not tell them apart
+  if (isCoded(column)) return column.names[column.codes[i]] || null;
   const v = column[i];
   if (column instanceof Float64Array) return Number.isNaN(v) ? null : v;
   return v < 0 ? null : v;
@@ -92,7 +93,7 @@ function columnOf(field: Field, rows: readonly Row[]): Column {
     const codes = new Uint32Array(rows.length).fill(EMPTY_CODE);
     rows.forEach((row, i) => {
       const cell = row[name];
-      if (cell === null || cell === undefined) return;
+      if (cell === null || cell === undefined || cell === '') return;
       const text = String(cell);
       let at = code.get(text);
       if (at === undefined) {
@@ -124,10 +125,10 @@ export const EMPTY_CODE = 0xffffffff;
  * Row of the first empty cell in a column, or −1: a column whose field says it is never empty must have none.
  */
 export function firstEmpty(column: Column, rows: number): number {
-  if (isConstant(column)) return column.value === null && rows > 0 ? 0 : -1;
+  if (isConstant(column)) return (column.value === null || column.value === '') && rows > 0 ? 0 : -1;
   if (isCoded(column)) {
     const { codes, names } = column;
-    for (let i = 0; i < rows; i++) if (codes[i] >= names.length) return i;
+    for (let i = 0; i < rows; i++) if (!names[codes[i]]) return i;
     return -1;
   }
   if (column instanceof Float64Array) {

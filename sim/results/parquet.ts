@@ -49,14 +49,15 @@ export function sinkWriter(sink: ByteSink): ByteWriter & { flush(): void } {
 /** Values as the library wants them: typed arrays, or plain arrays with null where a cell is empty. */
 function parquetValues(field: Field, column: Column, rows: number): DecodedArray {
   if (isConstant(column)) {
-    if (field.type === 'text' || column.value === null) return new Array(rows).fill(column.value);
+    if (field.type === 'text' || column.value === null)
+      return new Array(rows).fill(column.value === '' ? null : column.value);
     const values = field.type === 'number' ? new Float64Array(rows) : new Int32Array(rows);
     return values.fill(column.value as number);
   }
   if (isCoded(column)) {
     const { codes, names } = column;
     const out = new Array<string | null>(rows);
-    for (let i = 0; i < rows; i++) out[i] = names[codes[i]] ?? null;
+    for (let i = 0; i < rows; i++) out[i] = names[codes[i]] || null;
     return out;
   }
   if (column instanceof Float64Array) {

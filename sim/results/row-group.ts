@@ -92,10 +92,10 @@ function addText(
     return code;
   };
   if (isConstant(column)) {
-    to.fill(column.value === null ? EMPTY_CODE : codeOf(String(column.value)), at, at + rows);
+    to.fill(column.value === null || column.value === '' ? EMPTY_CODE : codeOf(String(column.value)), at, at + rows);
     return;
   }
   if (!isCoded(column)) throw new Error('a text column was given numbers');
-  const code = column.names.map(codeOf);
+  const code = column.names.map((name) => (name === '' ? EMPTY_CODE : codeOf(name)));
   for (let i = 0; i < rows; i++) to[at + i] = code[column.codes[pick === null ? i : pick[i]]] ?? EMPTY_CODE;
 }

@@ -59,6 +59,8 @@ function measured(entry: Entry): Field {
   return field(entry.name, entry.type ?? 'number', entry.unit, entry.meaning, formula, 'not defined there');
 }
 
+const ENDED = 'the pocket has ended';
+
 /** All tables of a run. */
 export function tablesOf(facts: Facts): Table[] {
   const panel = panelColumns(facts);
@@ -318,49 +320,55 @@ export function tablesOf(facts: Facts): Table[] {
         replicate,
         field('generation', 'integer', '', 'Generation t that decides.', '0 … T − 1'),
         field('pocket', 'integer', '', 'Pocket; the same number is the same pocket over generations.', '0, 1, 2 …'),
-        field('size', 'integer', 'households', 'Core households.', 'members of the connected component'),
+        field(
+          'size',
+          'integer',
+          'households',
+          'Core households; 0 in the row that tells of its end.',
+          'members of the connected component',
+        ),
         field('fringe', 'integer', 'households', 'Frustrated ties of core households that are not core.', 'count'),
         field('places', 'integer', 'places', 'Places its core households live in.', 'count of different places'),
-        field('mean_wealth', 'number', unit, 'Mean wealth of its core households.', 'mean of y'),
+        field('mean_wealth', 'number', unit, 'Mean wealth of its core households.', 'mean of y', ENDED),
         field(
           'p_value',
           'number',
           '',
           'Share of permutations of statuses whose largest pocket is at least as large.',
           '(1 + count)/(1 + permutations)',
-          'no permutations were made',
+          `${ENDED}, or no permutations were asked for`,
         ),
         field(
           'event',
           'text',
           '',
-          'What happened since the last generation.',
-          'born, continues, grows, merges, splits, dissolves',
+          'What happened to it since the generation before.',
+          'born, holds, grows, shrinks (the same pocket by largest overlap of members, Jaccard ≥ 0.3), merges (took in at least half of another), splits (at least half of it out of parent), dissolves (gone), absorbed (gone, at least half of it into parent)',
           'not followed',
         ),
         field(
           'parent',
           'integer',
           '',
-          'Pocket of the last generation it comes from.',
-          'largest overlap of members (Jaccard)',
-          'it comes from none',
+          'Pocket it came out of (splits) or went into (absorbed).',
+          'number of that pocket',
+          'the event has no other pocket',
         ),
         field(
           'local',
           'integer',
           'households',
-          'Members that only their own reference keeps from a milestone.',
-          'count',
-          'causes were not looked for',
+          'Core households that only their own reference keeps from a milestone.',
+          'count of cause local',
+          'causes were not worked out',
         ),
         field(
           'general',
           'integer',
           'households',
-          'Members frustrated under the society-wide reference too.',
-          'count',
-          'causes were not looked for',
+          'Core households frustrated under the society-wide reference too.',
+          'count of cause general',
+          'causes were not worked out',
         ),
       ],
     },

@@ -132,6 +132,17 @@ describe.each(['parquet', 'csv'] as const)('%s', (format) => {
     expectSame(await roundTrip(format, [{ rows, columns }]), [{ rows, columns }]);
   });
 
+  test('takes an empty text for an empty cell', async () => {
+    const { columns } = columnsOf(FIELDS, [{ number: 1, integer: 1, flag: 1, text: 'a', same: 's' }]);
+    const batch = { rows: 1, columns: [...columns] };
+    batch.columns[6] = { codes: Uint8Array.of(0), names: ['', 'core'] };
+    batch.columns[9] = { value: '' };
+    const back = await roundTrip(format, [batch]);
+    expect([cellAt(back.columns['maybe_text'], 0), cellAt(back.columns['never_text'], 0)]).toEqual([null, null]);
+    batch.columns[5] = { codes: Uint8Array.of(0), names: [''] };
+    await expect(roundTrip(format, [batch])).rejects.toThrow('text is never empty');
+  });
+
   test('gives back a table without rows', async () => {
     const batches = [columnsOf(FIELDS, [])];
     expectSame(await roundTrip(format, batches), batches);
