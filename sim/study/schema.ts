@@ -116,7 +116,11 @@ const Technology = z.discriminatedUnion('kind', [
 
 /** An arm changes single keys of the technology; naming a kind replaces it. */
 const PartialTechnology = z.strictObject({
-  kind: z.enum(['linear', 'concave']).optional(),
+  kind: note(
+    z.enum(['linear', 'concave']),
+    'Kind',
+    'linear: every unit invested brings the same. concave: the more is invested, the less the next unit brings.',
+  ).optional(),
   gross_return: grossReturn.optional(),
   scale: scale.optional(),
   elasticity: elasticity.optional(),

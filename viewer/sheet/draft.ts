@@ -115,6 +115,9 @@ function spot(path: Path, from: number, keyEnd: number, value: Node | null): Spo
   return { path, from, to: range[1], value: range[0] };
 }
 
+/** Faults that lie with a key, not with its value. */
+const AT_KEY: ReadonlySet<string> = new Set(['unknown-key', 'keys-exclude', 'not-yet', 'duplicate-key']);
+
 function faultOf(problem: Problem, text: string, lines: LineCounter, spots: readonly Spot[]): Fault {
   const at = /^study:(\d+):(\d+)$/.exec(problem.place);
   const { code, remedy } = problem;
@@ -134,9 +137,10 @@ function faultOf(problem: Problem, text: string, lines: LineCounter, spots: read
   const line = Number(at[1]);
   const column = Number(at[2]);
   const from = Math.min(text.length, (lines.lineStarts[line - 1] ?? 0) + column - 1);
-  // the outermost value that starts here, unless the key itself is meant
+  // a map starts where its first key does: the code says which of the two is meant
   const here = spots.filter((one) => one.from === from || one.value === from);
-  const found = here.find((one) => one.value === from) ?? here[0];
+  const byKey = AT_KEY.has(code) ? here.find((one) => one.from === from) : undefined;
+  const found = byKey ?? here.find((one) => one.value === from) ?? here[0];
   let path: Path = found?.path ?? [];
   const named = /^(\S+) is missing$/.exec(problem.problem)?.[1];
   if (named !== undefined) path = pathOf(named) ?? path;

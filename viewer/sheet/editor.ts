@@ -109,7 +109,7 @@ const highlight = HighlightStyle.define([
   { tag: [tags.definition(tags.propertyName), tags.propertyName], color: 'var(--ink)', fontWeight: '600' },
   { tag: tags.comment, color: 'var(--soft)', fontStyle: 'italic' },
   { tag: [tags.separator, tags.punctuation, tags.squareBracket, tags.brace], color: 'var(--soft)' },
-  { tag: [tags.string, tags.content, tags.number, tags.bool], color: 'var(--satisfied-text, var(--satisfied))' },
+  { tag: [tags.string, tags.content, tags.number, tags.bool], color: 'var(--ink)' },
 ]);
 
 export class YamlEditor {
@@ -147,7 +147,7 @@ export class YamlEditor {
           marked,
           // Tab is left to the keyboard's way through the page
           keymap.of([...defaultKeymap, ...historyKeymap, ...lintKeymap]),
-          EditorView.contentAttributes.of({ 'aria-label': 'The study as YAML', spellcheck: 'false' }),
+          EditorView.contentAttributes.of({ 'aria-label': 'The study as YAML', spellcheck: 'false', tabindex: '0' }),
           look,
           hoverTooltip((_, position) => this.#tooltip(position)),
           EditorView.updateListener.of((update) => {

@@ -130,6 +130,7 @@ function alike(a: unknown, b: unknown): boolean {
  * What a choice brings with it: settings that no longer belong go, those now needed come.
  *
  * @param path - of the group the choice stands in
+ * @param values - of that group, the choice made
  * @returns the new text
  */
 export function follow(
@@ -137,10 +138,9 @@ export function follow(
   path: Path,
   group: GroupField,
   key: string,
-  raw: unknown,
+  values: Values,
   order: KeyOrder,
 ): string {
-  const values = (valueAt(raw, path) ?? {}) as Values;
   let out = text;
   const drop = (name: string): void => {
     if (values[name] !== undefined) out = removeValue(out, [...path, name]);

@@ -126,6 +126,12 @@ export function alternative(key: string, variant: string): Alternative {
   return ALTERNATIVES[key]?.[variant] ?? { name: variant.replaceAll('_', ' '), says: '' };
 }
 
+/** What leaving a choice of alternatives out is called. */
+export const LEFT_OUT: Readonly<Record<string, string>> = {
+  places: 'one place',
+  mixing: 'no mixing',
+};
+
 const CHOICES: Readonly<Record<string, string>> = {
   upward_mean: 'mean of the richer',
   similarity_mean: 'mean of the similar',
@@ -196,7 +202,7 @@ const STARTERS: Readonly<Record<string, Value>> = {
   degrees: { kind: 'poisson', mean: 10 },
   sd_log: 0.5,
   path: 'ties.csv',
-  name: 'karate',
+  name: 'cycle',
   share: 0.5,
   target: 'economic_connectedness',
   value: 0.95,
