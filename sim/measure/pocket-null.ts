@@ -11,10 +11,8 @@
  * by that, and a larger one keeps a relative standard error below √(10/R) (22 % at R = 199).
  */
 import type { Ties } from '../../network/graph.js';
+import { countLanes, dealMarks, LANES } from './lanes.js';
 import type { PermutationPlan } from './permutations.js';
-
-/** Permutations to a word. */
-const LANES = 32;
 
 /** p-values of pockets and of the arm. */
 export interface PocketTest {
@@ -51,21 +49,16 @@ export function pocketTest(
 ): PocketTest {
   const { n } = ties;
   const { count } = plan;
-  const holders: number[] = [];
-  for (let i = 0; i < n; i++) if (frustrated[i] === 1) holders.push(i);
-  const holder = Uint32Array.from(holders);
+  const holders = householdsWith(frustrated);
+  const longHolders = householdsWith(long);
   const frustratedWord = new Int32Array(n);
   const longWord = new Int32Array(n);
   const coreWord = new Int32Array(n);
   const coreCount = new Uint32Array(LANES);
+  const limits = new Uint32Array(LANES);
   const search = new LargestComponent(ties, coreWord);
 
-  let smallest = Infinity;
-  let largest = 0;
-  for (let k = 0; k < sizes.length; k++) {
-    smallest = Math.min(smallest, sizes[k]);
-    largest = Math.max(largest, sizes[k]);
-  }
+  const ascending = Float64Array.from(sizes).sort();
   const reached = new Uint32Array(sizes.length);
   let coreReached = 0;
   const enough = Math.ceil(0.1 * (count + 1));
@@ -75,22 +68,24 @@ export function pocketTest(
     frustratedWord.fill(0);
     longWord.fill(0);
     for (let lane = 0; lane < lanes; lane++) {
-      const list = plan.list(drawn + lane);
-      const bit = 1 << lane;
-      for (let h = 0; h < holder.length; h++) {
-        const from = holder[h];
-        const to = list[from];
-        frustratedWord[to] |= bit;
-        if (long[from] === 1) longWord[to] |= bit;
-      }
+      const order = plan.list(drawn + lane);
+      dealMarks(frustratedWord, order, holders, 1 << lane);
+      dealMarks(longWord, order, longHolders, 1 << lane);
     }
     coreWords(ties, frustratedWord, longWord, needed, coreWord);
-    countLanes(coreWord, coreCount);
+    countLanes(coreWord, n, coreCount);
+    let flooded = 0;
     for (let lane = 0; lane < lanes; lane++) {
       if (coreCount[lane] >= cores) coreReached++;
-      // too few core households for any pocket observed: no search needed
-      if (coreCount[lane] < smallest) continue;
-      const size = search.upTo(lane, largest);
+      // no pocket can be larger than the number of core households: sizes beyond it need no search
+      limits[lane] = 0;
+      for (const size of ascending) if (size <= coreCount[lane]) limits[lane] = size;
+      if (limits[lane] >= WORTH_A_FLOOD) flooded |= 1 << lane;
+    }
+    search.flood(flooded);
+    for (let lane = 0; lane < lanes; lane++) {
+      if (limits[lane] === 0) continue;
+      const size = search.upTo(lane, limits[lane], coreCount[lane]);
       for (let k = 0; k < reached.length; k++) if (size >= sizes[k]) reached[k]++;
     }
     drawn += lanes;
@@ -101,6 +96,13 @@ export function pocketTest(
     coreP: (1 + coreReached) / (1 + drawn),
     drawn,
   };
+}
+
+function householdsWith(mark: Uint8Array): Uint32Array {
+  const list = new Uint32Array(mark.length);
+  let count = 0;
+  for (let i = 0; i < mark.length; i++) if (mark[i] === 1) list[count++] = i;
+  return list.subarray(0, count);
 }
 
 /** Core households of 32 permutations at once: long, and at least `needed` neighbours frustrated. */
@@ -185,28 +187,21 @@ function coreWords(
   }
 }
 
-/** How many words have each bit set. Bit planes again: about three steps a word. */
-function countLanes(words: Int32Array, out: Uint32Array): void {
-  const planes = new Int32Array(32);
-  for (let i = 0; i < words.length; i++) {
-    let carry = words[i];
-    for (let p = 0; carry !== 0; p++) {
-      const next = planes[p] & carry;
-      planes[p] ^= carry;
-      carry = next;
-    }
-  }
-  for (let lane = 0; lane < LANES; lane++) {
-    let count = 0;
-    for (let p = 0; p < 32; p++) count += ((planes[p] >>> lane) & 1) * 2 ** p;
-    out[lane] = count;
-  }
-}
+/** Sizes from which flooding 32 permutations at once beats searching each until a set of that size is found. */
+const WORTH_A_FLOOD = 40;
 
-/** Size of the largest connected set of core households in one lane, searched no further than asked. */
+/**
+ * Largest connected sets of core households, searched no further than asked.
+ *
+ * Where core households are many they percolate, and one search would walk nearly all of them in every permutation. So
+ * one component of each permutation (most likely the giant one) is flooded in all 32 together first.
+ */
 class LargestComponent {
   readonly #ties: Ties;
   readonly #words: Int32Array;
+  /** Households the flood reached, by permutation. */
+  readonly #reach: Int32Array;
+  readonly #reachCount = new Uint32Array(LANES);
   readonly #seen: Int32Array;
   readonly #stack: Uint32Array;
   #stamp = 0;
@@ -214,21 +209,60 @@ class LargestComponent {
   constructor(ties: Ties, words: Int32Array) {
     this.#ties = ties;
     this.#words = words;
+    this.#reach = new Int32Array(ties.n);
     this.#seen = new Int32Array(ties.n);
     this.#stack = new Uint32Array(ties.n);
   }
 
-  /** Largest size, or `limit` as soon as a set of that size is certain. */
-  upTo(lane: number, limit: number): number {
+  /** Floods one component of each permutation in `mask`; forgets earlier floods. */
+  flood(mask: number): void {
     const { n, start, target } = this.#ties;
     const words = this.#words;
+    const reach = this.#reach;
+    reach.fill(0);
+    this.#reachCount.fill(0);
+    if (mask === 0) return;
+    // start from the first core household of each permutation past the middle: any will do
+    let unseeded = mask;
+    for (let k = 0, i = n >>> 1; k < n && unseeded !== 0; k++, i = i + 1 === n ? 0 : i + 1) {
+      const seed = words[i] & unseeded;
+      reach[i] |= seed;
+      unseeded &= ~seed;
+    }
+    // sweep up and down until nothing changes
+    for (let changed = true, up = true; changed; up = !up) {
+      changed = false;
+      for (let k = 0; k < n; k++) {
+        const i = up ? k : n - 1 - k;
+        const open = words[i] & mask & ~reach[i];
+        if (open === 0) continue;
+        let near = 0;
+        for (let e = start[i], end = start[i + 1]; e < end; e++) near |= reach[target[e]];
+        if ((near & open) === 0) continue;
+        reach[i] |= near & open;
+        changed = true;
+      }
+    }
+    countLanes(reach, n, this.#reachCount);
+  }
+
+  /**
+   * Largest size, or `limit` as soon as a set of that size is certain.
+   *
+   * @param cores - core households in this permutation
+   */
+  upTo(lane: number, limit: number, cores: number): number {
+    const { n, start, target } = this.#ties;
+    const words = this.#words;
+    const reach = this.#reach;
     const seen = this.#seen;
     const stack = this.#stack;
     const stamp = ++this.#stamp;
     const bit = 1 << lane;
-    let largest = 0;
-    for (let i = 0; i < n; i++) {
-      if ((words[i] & bit) === 0 || seen[i] === stamp) continue;
+    let largest = this.#reachCount[lane];
+    let left = cores - largest;
+    for (let i = 0; i < n && largest < limit && left > largest; i++) {
+      if ((words[i] & ~reach[i] & bit) === 0 || seen[i] === stamp) continue;
       let size = 0;
       let top = 0;
       stack[top++] = i;
@@ -245,8 +279,9 @@ class LargestComponent {
         // those on the stack belong to the set as well
         if (size + top >= limit) return limit;
       }
+      left -= size;
       if (size > largest) largest = size;
     }
-    return largest;
+    return Math.min(largest, limit);
   }
 }

@@ -7,6 +7,7 @@
  */
 import { ShapeError } from '../../network/errors.js';
 import { type Ties, toPairs, type Uniform } from '../../network/graph.js';
+import { countLanes, dealMarks, LANES } from './lanes.js';
 import { PermutationPlan } from './permutations.js';
 
 /** Ties as a list, with what Moran's I needs of them. Worth keeping while ties do not change. */
@@ -53,8 +54,6 @@ export interface NullResult {
 
 /** Permutations of Moran's I worked at once. */
 const WIDTH = 8;
-/** Marks of 32 permutations fit into a word. */
-const LANES = 32;
 /** Sums of the same terms in another order may differ by this much. */
 const SLACK = 1e-12;
 
@@ -101,7 +100,7 @@ export function moranNull(list: TieList, value: Float64Array, i: number, plan: P
   return { p: (1 + extreme) / (1 + drawn), drawn };
 }
 
-/** Σ over ties of weight × the values at both ends, for eight arrangements side by side. */
+/** Σ over ties of weight × the values at both ends, for eight arrangements side by side. Ties are sorted by source. */
 function crossProducts(
   source: Uint32Array,
   target: Uint32Array,
@@ -109,35 +108,40 @@ function crossProducts(
   spread: Float64Array,
   out: Float64Array,
 ): void {
-  let c0 = 0;
-  let c1 = 0;
-  let c2 = 0;
-  let c3 = 0;
-  let c4 = 0;
-  let c5 = 0;
-  let c6 = 0;
-  let c7 = 0;
-  for (let e = 0; e < weight.length; e++) {
-    const a = source[e] * WIDTH;
-    const b = target[e] * WIDTH;
-    const w = weight[e];
-    c0 += w * spread[a] * spread[b];
-    c1 += w * spread[a + 1] * spread[b + 1];
-    c2 += w * spread[a + 2] * spread[b + 2];
-    c3 += w * spread[a + 3] * spread[b + 3];
-    c4 += w * spread[a + 4] * spread[b + 4];
-    c5 += w * spread[a + 5] * spread[b + 5];
-    c6 += w * spread[a + 6] * spread[b + 6];
-    c7 += w * spread[a + 7] * spread[b + 7];
+  out.fill(0);
+  const ties = weight.length;
+  for (let e = 0; e < ties; ) {
+    const from = source[e];
+    let s0 = 0;
+    let s1 = 0;
+    let s2 = 0;
+    let s3 = 0;
+    let s4 = 0;
+    let s5 = 0;
+    let s6 = 0;
+    let s7 = 0;
+    for (; e < ties && source[e] === from; e++) {
+      const b = target[e] * WIDTH;
+      const w = weight[e];
+      s0 += w * spread[b];
+      s1 += w * spread[b + 1];
+      s2 += w * spread[b + 2];
+      s3 += w * spread[b + 3];
+      s4 += w * spread[b + 4];
+      s5 += w * spread[b + 5];
+      s6 += w * spread[b + 6];
+      s7 += w * spread[b + 7];
+    }
+    const a = from * WIDTH;
+    out[0] += spread[a] * s0;
+    out[1] += spread[a + 1] * s1;
+    out[2] += spread[a + 2] * s2;
+    out[3] += spread[a + 3] * s3;
+    out[4] += spread[a + 4] * s4;
+    out[5] += spread[a + 5] * s5;
+    out[6] += spread[a + 6] * s6;
+    out[7] += spread[a + 7] * s7;
   }
-  out[0] = c0;
-  out[1] = c1;
-  out[2] = c2;
-  out[3] = c3;
-  out[4] = c4;
-  out[5] = c5;
-  out[6] = c6;
-  out[7] = c7;
 }
 
 /**
@@ -151,38 +155,26 @@ export function joinCountNull(list: TieList, mark: Uint8Array, plan: Permutation
   const { n, source, target, tied, isTied } = list;
   if (mark.length !== n) throw new ShapeError('mark', mark.length, n, 'one mark per household');
   const { count } = plan;
-  const marked: number[] = [];
-  for (let h = 0; h < n; h++) if (mark[h] === 1 && (isTied === null || isTied[h] === 1)) marked.push(h);
+  const holders = new Uint32Array(n);
+  let holding = 0;
+  for (let h = 0; h < n; h++) if (mark[h] === 1 && (isTied === null || isTied[h] === 1)) holders[holding++] = h;
+  const marked = holders.subarray(0, holding);
   if (marked.length === 0 || marked.length === tied || count === 0) return { p: NaN, drawn: 0 };
   let observed = 0;
   for (let e = 0; e < source.length; e++) observed += mark[source[e]] & mark[target[e]];
   const enough = Math.ceil(0.1 * (count + 1));
   const words = new Int32Array(n);
-  const planes = new Int32Array(32);
+  const joined = new Int32Array(source.length);
+  const joins = new Uint32Array(LANES);
   let reached = 0;
   let drawn = 0;
   while (drawn < count && reached < enough) {
     const lanes = Math.min(LANES, count - drawn);
     words.fill(0);
-    for (let lane = 0; lane < lanes; lane++) {
-      const order = plan.list(drawn + lane);
-      const bit = 1 << lane;
-      for (let k = 0; k < marked.length; k++) words[order[marked[k]]] |= bit;
-    }
-    planes.fill(0);
-    for (let e = 0; e < source.length; e++) {
-      let carry = words[source[e]] & words[target[e]];
-      for (let p = 0; carry !== 0; p++) {
-        const next = planes[p] & carry;
-        planes[p] ^= carry;
-        carry = next;
-      }
-    }
-    for (let lane = 0; lane < lanes; lane++) {
-      let joins = 0;
-      for (let p = 0; p < 32; p++) joins += ((planes[p] >>> lane) & 1) * 2 ** p;
-      if (joins >= observed) reached++;
-    }
+    for (let lane = 0; lane < lanes; lane++) dealMarks(words, plan.list(drawn + lane), marked, 1 << lane);
+    for (let e = 0; e < joined.length; e++) joined[e] = words[source[e]] & words[target[e]];
+    countLanes(joined, joined.length, joins);
+    for (let lane = 0; lane < lanes; lane++) if (joins[lane] >= observed) reached++;
     drawn += lanes;
   }
   return { p: (1 + reached) / (1 + drawn), drawn };
