@@ -47,7 +47,7 @@ export function csvFrame(text: string, file: string): Frame {
       );
     }
     for (let c = 0; c < cells.length; c++) {
-      if (isNumber[c] && !EMPTY.has(cells[c]) && !isNumeric(cells[c])) isNumber[c] = false;
+      if (isNumber[c] && Number.isNaN(numeric(cells[c])) && !isEmpty(cells[c])) isNumber[c] = false;
     }
     rows++;
   });
@@ -70,7 +70,7 @@ export function csvFrame(text: string, file: string): Frame {
         const cell = cells[c];
         const number = numbers[c];
         const code = codes[c];
-        if (number) number[at] = EMPTY.has(cell) ? NaN : numeric(cell);
+        if (number) number[at] = numeric(cell);
         else if (code) {
           if (cell === '') code[at] = -1;
           else {
@@ -121,14 +121,22 @@ function eachRow(text: string, file: string, onRow: (cells: string[], row: numbe
   Papa.parse<string[]>(text.charCodeAt(0) === 0xfeff ? text.slice(1) : text, config);
 }
 
-function isNumeric(cell: string): boolean {
-  return !Number.isNaN(numeric(cell));
+/** A cell that counts as missing in a column of numbers. */
+function isEmpty(cell: string): boolean {
+  return cell.length < 4 && EMPTY.has(cell);
 }
 
 /** Numbers as other programs write them, infinity included; NaN for anything else. */
 function numeric(cell: string): number {
-  if (/^\s*[+-]?inf(inity)?\s*$/i.test(cell)) return cell.trim().startsWith('-') ? -Infinity : Infinity;
-  return /^\s*[+-]?[\d.]/.test(cell) && !/[xob]/i.test(cell) ? Number(cell) : NaN;
+  const value = Number(cell);
+  if (!Number.isNaN(value)) {
+    // Number takes blanks for 0 and 0x1F for 31
+    if (value === 0 && cell.trim() === '') return NaN;
+    const second = cell.charCodeAt(1) | 32;
+    return second === 120 || second === 111 || second === 98 ? NaN : value;
+  }
+  if (/^\s*[+-]?inf(inity)?\s*$/i.test(cell)) return cell.includes('-') ? -Infinity : Infinity;
+  return NaN;
 }
 
 /**
