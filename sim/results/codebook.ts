@@ -91,6 +91,10 @@ export const CONVENTIONS: Codebook['conventions'] = [
     title: 'Growth',
     text: 'Growth is a gross factor per generation: 1.25 is 25 % more. The yearly rate is growth^(1/years_per_generation) − 1.',
   },
+  {
+    title: 'Regressions',
+    text: 'Classical errors: RSS/(n − k). HC1: n/(n − k). HC3: e²/(1 − h)². k counts absorbed effects (levels less connected components). Clustered: G/(G − 1)·(n − 1)/(n − k), effects nested in a cluster not counted, t with G − 1 degrees of freedom; two-way by inclusion and exclusion with the smaller G in one factor, negative eigenvalues set to zero and said so. Effects are absorbed by alternating projections to 1e−10 after rows alone in their group are dropped; columns collinear with those before them at 1e−9 are dropped and named. Logit: normal tests unless clustered; marginal effects are averages, every term taken as continuous. Instruments: two-stage least squares with RSS/(n − k); Wu–Hausman in its regression form, Sargan n·R², Hansen J at the two-step estimate; effective F after Montiel Olea and Pflueger.',
+  },
 ];
 
 function schemaField(field: Field): SchemaField {
