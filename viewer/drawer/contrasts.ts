@@ -103,8 +103,38 @@ async function load(app: App): Promise<Data> {
   return { rows, replicates, paths };
 }
 
+/** Indicators whose name in the tables does not read as words. */
+const NAMES: Readonly<Record<string, string>> = {
+  gini: 'Gini',
+  theil_t: 'Theil T',
+  theil_l: 'Theil L',
+  theil_t_between_places: 'Theil T between places',
+  theil_t_between_groups: 'Theil T between groups',
+  atkinson_half: 'Atkinson (½)',
+  atkinson_1: 'Atkinson (1)',
+  atkinson_2: 'Atkinson (2)',
+  share_bottom_40: 'share of the bottom 40 %',
+  share_top_10: 'share of the top 10 %',
+  p90_p10: 'P90 / P10',
+  palma: 'Palma ratio',
+  esteban_ray: 'Esteban–Ray',
+  der_half: 'Duclos–Esteban–Ray (½)',
+  wolfson: 'Wolfson',
+  dip: 'dip',
+  dip_p: 'dip, p',
+  rank_rank_slope: 'rank–rank slope',
+  join_count_z: 'join count, z',
+  join_count_p: 'join count, p',
+  moran: 'Moran’s I',
+  moran_expected: 'Moran’s I expected',
+  moran_p: 'Moran’s I, p',
+  coleman_group: 'Coleman homophily',
+  e_i_group: 'E–I index',
+  pocket_p: 'pockets, p',
+};
+
 export function inWords(indicator: string): string {
-  return indicator.replaceAll('_', ' ');
+  return NAMES[indicator] ?? indicator.replaceAll('_', ' ');
 }
 
 /** The interval against zero, on its own scale: which side it lies on and how surely. */
@@ -134,7 +164,7 @@ export function contrastsPanel(app: App): TemplateResult {
   return html`<div class="contrasts">
     <div class="scrolls" tabindex="0" role="group" aria-label="Indicators">
       <table class="list">
-        <thead><tr><th scope="col">generation ${view.generation}, ${got.replicates === 1 ? 'one replicate' : `${got.replicates} replicates`}</th><th scope="col" class="right">${a}</th><th scope="col" class="right">${b}</th><th scope="col" class="right">difference</th><th scope="col" class="right">95 % interval</th><th scope="col"><span class="hidden-text">interval drawn</span></th></tr></thead>
+        <thead><tr><th scope="col">generation ${view.generation}, ${got.replicates === 1 ? 'one replicate' : `${got.replicates} replicates`}</th><th scope="col" class="right">${a}</th><th scope="col" class="right">${b}</th><th scope="col" class="right">${b} − ${a}</th><th scope="col" class="right">95 % interval</th><th scope="col"><span class="hidden-text">interval drawn</span></th></tr></thead>
         <tbody>
           ${got.rows.map(
             (r) => html`<tr class=${r.indicator === chosen ? 'chosen' : ''}>

@@ -92,7 +92,8 @@ export function short(value: number): string {
   if (size >= 1000) return String(Math.round(value)).replace(/\B(?=(\d{3})+$)/g, '\u202f');
   if (size >= 100) return value.toFixed(0);
   if (size >= 10) return trim(value.toFixed(1));
-  if (size >= 0.01) return trim(value.toFixed(2));
+  if (size >= 0.1) return trim(value.toFixed(2));
+  if (size >= 1e-4) return trim(value.toFixed(size >= 0.01 ? 3 : size >= 0.001 ? 4 : 5));
   return value.toExponential(0);
 }
 

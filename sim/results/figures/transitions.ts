@@ -53,8 +53,7 @@ export function transitionsFigure(size: Size, arms: readonly Transition[], title
       );
     stay.push(`${arm.name}: ${Math.round(100 * arm.share[0])} % of the poorest fifth's children stay in it`);
   });
-  if (5 * cell <= 112)
-    parts.push(label(52, 20 + 5 * cell + 15, 'child’s quintile, poorest to richest →', 'start', 'f-soft'));
+  if (5 * cell <= 112) parts.push(label(52, 20 + 5 * cell + 15, 'child: poorest to richest →', 'start', 'f-soft'));
   return figure(
     size,
     title,
