@@ -55,8 +55,9 @@ export function studyHash(canonicalStudy: string): string {
 
 /** Files in a folder, made if it is not there. Several workers may use the same folder for different files. */
 export function folderStore(folder: string): Store {
-  const path = (name: string): string => join(folder, name);
-  mkdirSync(folder, { recursive: true });
+  const root = resolve(folder);
+  const path = (name: string): string => join(root, name);
+  mkdirSync(root, { recursive: true });
   return {
     create(name) {
       const temporary = path(name + WRITING);
@@ -93,7 +94,7 @@ export function folderStore(folder: string): Store {
       return bytes;
     },
     list(prefix) {
-      return readdirSync(folder, { recursive: true, withFileTypes: true })
+      return readdirSync(root, { recursive: true, withFileTypes: true })
         .filter((entry) => entry.isFile())
         .map((entry) =>
           join(entry.parentPath, entry.name)
