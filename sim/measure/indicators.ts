@@ -81,6 +81,8 @@ export class IndicatorContext {
   #ratios: RatioMeasures | undefined;
   #curve: Float64Array | undefined;
   #dip: number | undefined;
+  #modes: number | undefined;
+  #sdLog: number | undefined;
   #ties: TieFacts | undefined;
   #moran: Moran | undefined;
   #joins: JoinCount | undefined;
@@ -138,6 +140,18 @@ export class IndicatorContext {
   get curve(): Float64Array {
     this.#curve ??= lorenz(this.sample, [0.4, 0.9]);
     return this.#curve;
+  }
+
+  /** Modes that stand out of the log-wealth density. */
+  get modes(): number {
+    this.#modes ??= densityModes(this.sortedLog).length;
+    return this.#modes;
+  }
+
+  /** Standard deviation of log wealth, denominator n. */
+  get sdLog(): number {
+    this.#sdLog ??= Math.sqrt(variance(this.sortedLog));
+    return this.#sdLog;
   }
 
   /** What is known of the ties alone. */
@@ -370,7 +384,7 @@ export const INDICATORS: readonly Indicator[] = [
     source: 'Silverman 1986, eq. 3.31',
     unit: 'count',
     needs: ['wealth'],
-    of: (c) => densityModes(c.sortedLog).length,
+    of: (c) => c.modes,
   },
   {
     name: 'elasticity',
@@ -643,7 +657,7 @@ export const INDICATORS: readonly Indicator[] = [
     source: 'definition',
     unit: 'index',
     needs: ['wealth'],
-    of: (c) => sdOfLogs(c),
+    of: (c) => c.sdLog,
   },
 ];
 
@@ -671,10 +685,6 @@ function localShare({ cause }: Causes): number {
   let local = 0;
   for (let i = 0; i < cause.length; i++) if (cause[i] === 1) local++;
   return local / cause.length;
-}
-
-function sdOfLogs({ sortedLog }: IndicatorContext): number {
-  return Math.sqrt(variance(sortedLog));
 }
 
 function logsOfParent(context: IndicatorContext): Float64Array {
