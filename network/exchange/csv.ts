@@ -100,13 +100,20 @@ export function eachCsvRow(
     }
     onRow(fields, at);
   };
-  // the library's `step` and `chunkSize` apply to text too, but their types speak of files only
+  // by chunk, not by row: the library's per-row results cost more than the rows. `chunkSize` applies to text too, but the
+  // types speak of files only
   const settings = {
     delimiter: ',',
     newline: '\n' as const,
     chunkSize: CHUNK,
-    step: (result: Papa.ParseStepResult<string[]>): void => {
-      onFields(result.data, result.errors.find((e) => e.type === 'Quotes')?.code);
+    chunk: (result: Papa.ParseResult<string[]>): void => {
+      const broken = new Map<number, string>();
+      for (const { type, row, code } of result.errors) {
+        if (type === 'Quotes' && row !== undefined && !broken.has(row)) broken.set(row, code);
+      }
+      result.data.forEach((fields, row) => {
+        onFields(fields, broken.get(row));
+      });
     },
   };
   Papa.parse<string[]>(clean, settings as unknown as Papa.ParseConfig<string[]>);

@@ -9,6 +9,9 @@ import { csvField, eachCsvRow } from './csv.js';
 import { shown } from './faults.js';
 import { fileWeight, type Ids, TieReader } from './tie-reader.js';
 
+/** Rows written at a time. */
+const ROWS = 8192;
+
 /** Ties and the id of each household. */
 export interface ReadTies {
   readonly ties: Ties;
@@ -62,15 +65,15 @@ export function readEdgeList(text: string, place: string, ids: Ids | null = null
  */
 export function* edgeListText(ties: Ties, ids?: readonly string[]): Generator<string> {
   const { source, target, weight } = toPairs(ties);
-  const name = (i: number): string => (ids === undefined ? String(i) : csvField(ids[i]));
-  let piece = weight === null ? 'source,target\n' : 'source,target,weight\n';
+  const names = Array.from({ length: ties.n }, (_, i) => (ids === undefined ? String(i) : csvField(ids[i])));
+  let rows: string[] = [weight === null ? 'source,target\n' : 'source,target,weight\n'];
   for (let e = 0; e < source.length; e++) {
-    piece += `${name(source[e])},${name(target[e])}`;
-    piece += weight === null ? '\n' : `,${weight[e]}\n`;
-    if (piece.length > 65_536) {
-      yield piece;
-      piece = '';
+    const pair = `${names[source[e]]},${names[target[e]]}`;
+    rows.push(weight === null ? `${pair}\n` : `${pair},${weight[e]}\n`);
+    if (rows.length >= ROWS) {
+      yield rows.join('');
+      rows = [];
     }
   }
-  yield piece;
+  yield rows.join('');
 }

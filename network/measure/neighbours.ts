@@ -1,8 +1,8 @@
 /**
  * Means over those a household has ties to, and over the second circle (ties of its ties).
  *
- * Every tie counts the same here: tie weights enter the reference groups of the model, not these means. A
- * household with nobody in the circle has no mean (NaN).
+ * Every tie counts the same unless a function says otherwise: tie weights enter the reference groups of the model, not
+ * these means. A household with nobody in the circle has no mean (NaN).
  */
 import { ShapeError } from '../errors.js';
 import type { Ties } from '../graph.js';
@@ -30,6 +30,31 @@ export function neighbourMeans(ties: Ties, values: ArrayLike<number>, out: Float
       }
     }
     out[i] = count > 0 ? sum / count : Number.NaN;
+  }
+  return out;
+}
+
+/**
+ * Mean of a value over each household's neighbours, each counted by the weight of the tie.
+ *
+ * @param values - length n, without NaN
+ * @param out - overwritten, length n; must not share memory with `values`; NaN where the weights sum to 0
+ * @returns `out`. Cost O(n + ties).
+ * @throws {ShapeError} when a length is not n
+ */
+export function weightedNeighbourMeans(ties: Ties, values: ArrayLike<number>, out: Float64Array): Float64Array {
+  const { n, start, target, weight } = ties;
+  if (weight === null) return neighbourMeans(ties, values, out);
+  if (values.length !== n) throw new ShapeError('values', values.length, n, 'one value per household');
+  if (out.length !== n) throw new ShapeError('out', out.length, n, 'one value per household');
+  for (let i = 0; i < n; i++) {
+    let sum = 0;
+    let total = 0;
+    for (let e = start[i]; e < start[i + 1]; e++) {
+      sum += weight[e] * values[target[e]];
+      total += weight[e];
+    }
+    out[i] = total > 0 ? sum / total : Number.NaN;
   }
   return out;
 }

@@ -19,7 +19,7 @@ import {
   modularity,
 } from '../../network/measure/mixing-by-group.js';
 import { moran } from '../../network/measure/moran.js';
-import { neighbourMeans } from '../../network/measure/neighbours.js';
+import { neighbourMeans, weightedNeighbourMeans } from '../../network/measure/neighbours.js';
 import { median } from '../../network/measure/ranks.js';
 import { secondCircleSizes, secondStepWalks } from '../../network/measure/second-circle.js';
 import { networkSummary } from '../../network/measure/summary.js';
@@ -140,6 +140,8 @@ test('net-karate: tie weights, and the split with member 9 moved', () => {
     for (let e = ties.start[i]; e < ties.start[i + 1]; e++) strength[i] += ties.weight![e];
   }
   expectDefined(strength, checks['strength'], 'strength');
+  const means = weightedNeighbourMeans(ties, strength, new Float64Array(ties.n));
+  expectDefined(means, checks['nbr.wmean.strength'], 'nbr.wmean.strength');
   expectDefined(modularity(groupTies(ties, group, true)), checks['modularity_w.club'], 'modularity_w.club');
   group[8] = 1 - group[8];
   expectDefined(modularity(groupTies(ties, group)), checks['modularity.club_moved9'], 'modularity.club_moved9');

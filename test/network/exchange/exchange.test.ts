@@ -92,6 +92,10 @@ test('a file longer than one piece of parsing keeps every row and line', () => {
     if (table.lines[i] !== line || table.rows[i][1] !== String(i)) throw new Error(`row ${i}: line ${table.lines[i]}`);
     line += i % 1000 === 7 ? 2 : 1;
   }
+  rows[110_000] = '"x"y,1';
+  rows[115_000] = '"open,1';
+  const found = problems(() => readCsv(`id,value\n${rows.join('\n')}\n`, 'long.csv'));
+  expect(found.map((p) => p.place)).toEqual([110_000, 115_000].map((i) => `long.csv:${table.lines[i]}`));
 });
 
 test.each([
