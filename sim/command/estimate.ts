@@ -6,13 +6,11 @@ import { basename, dirname, join } from 'node:path';
 import type { Command } from 'commander';
 import { InputError } from '../../network/errors.js';
 import type { FrameSource } from '../estimate/frame.js';
-import { drawsCsv, estimatesCsv, estimatesJson, summaryCsv } from '../estimate/output.js';
+import { estimateFiles, estimatesJson } from '../estimate/output.js';
 import { panelSource } from '../estimate/panel.js';
-import { type Estimate, type Plan, parsePlan } from '../estimate/plan.js';
+import { type Estimate, Estimate as EstimateSchema, type Placer, type Plan, parsePlan } from '../estimate/plan.js';
 import { planText } from '../estimate/print.js';
-import { type PlanResults, runEstimates } from '../estimate/run.js';
-import { pythonScript } from '../estimate/script-python.js';
-import { rScript } from '../estimate/script-r.js';
+import { type PlanResults, type RunOptions, runEstimates } from '../estimate/run.js';
 import { csvSource, parquetSource } from '../estimate/table.js';
 import { folderSource, openResults } from '../results/open.js';
 
@@ -31,8 +29,8 @@ export function estimateCommand(program: Command): void {
     .option('--json', 'machine-readable result on standard output')
     .summary('run regressions on the panel')
     .description(
-      'Runs the regressions of a plan: least squares, logit or instruments, with absorbed effects and robust or\n' +
-        'clustered errors, arm by arm and over replicates. In a results folder it writes estimates.csv,\n' +
+      'Runs the regressions of a plan: least squares, logit or instruments, with absorbed effects and robust or ' +
+        'clustered errors, arm by arm and over replicates. In a results folder it writes estimates.csv, ' +
         'estimates_summary.csv, estimates.json, and panel.R and panel.py that rerun them; on a table it only prints.',
     )
     .addHelpText(
@@ -41,7 +39,8 @@ export function estimateCommand(program: Command): void {
         '  rungsight estimate --table survey.csv --plan gap.yaml --json\n\n' +
         'A plan:\n  estimates:\n    - name: Aspiration gap and growth\n      outcome: growth\n' +
         '      covariates: [log_wealth, aspiration_gap, {square: aspiration_gap}]\n' +
-        '      effects: [place, generation]\n      cluster: [place]',
+        '      effects: [place, generation]\n      cluster: [place]\n\n' +
+        `Keys of an estimate:\n${keys()}`,
     )
     .action(async (folder: string | undefined, options: Options) => {
       const plan = readPlan(options.plan);
@@ -53,22 +52,29 @@ export function estimateCommand(program: Command): void {
           remedy: 'name a results folder, or a table by --table',
         });
       }
-      const source = folder === undefined ? await tableSource(options.table as string) : await openFolder(folder);
-      const results = await runEstimates(plan.estimates, source, plan.place, {
-        seed: plan.seed,
-        onProgress: progress(options.json === true),
-      });
-      const head = { source: source.place, plan: options.plan };
-      if (folder !== undefined) writeEstimates(folder, plan.estimates, results, head);
-      if (options.json) process.stdout.write(estimatesJson(results, head));
-      else {
-        console.log(planText(results));
-        if (folder !== undefined)
-          console.log(
-            `\nWritten to ${folder}: estimates.csv, estimates_summary.csv, estimates.json; rerun them by panel.R or panel.py.`,
-          );
+      const running = { seed: plan.seed, onProgress: progress(options.json === true), plan: options.plan };
+      const results =
+        folder === undefined
+          ? await runEstimates(plan.estimates, await tableSource(options.table as string), plan.place, running)
+          : await estimateFolder(folder, plan.estimates, plan.place, running);
+      if (options.json) {
+        process.stdout.write(estimatesJson(results, { source: folder ?? options.table, plan: options.plan }));
+        return;
+      }
+      console.log(planText(results));
+      if (folder !== undefined) {
+        console.log(
+          `\nWritten to ${folder}: estimates.csv, estimates_summary.csv, estimates.json; rerun them by panel.R or panel.py.`,
+        );
       }
     });
+}
+
+/** The keys of an estimate with their sentences, from the schema. */
+function keys(): string {
+  const names = Object.keys(EstimateSchema.shape) as (keyof typeof EstimateSchema.shape)[];
+  const width = Math.max(...names.map((name) => name.length));
+  return names.map((name) => `  ${name.padEnd(width)}  ${EstimateSchema.shape[name].description ?? ''}`).join('\n');
 }
 
 function readPlan(file: string): Plan {
@@ -81,10 +87,6 @@ function readPlan(file: string): Plan {
     });
   }
   return parsePlan(readFileSync(file, 'utf8'), file);
-}
-
-async function openFolder(folder: string): Promise<FrameSource> {
-  return panelSource(await openResults(folder), folder);
 }
 
 /** A table file: Parquet by its ending or its first bytes, else CSV. */
@@ -103,28 +105,28 @@ export async function tableSource(file: string): Promise<FrameSource> {
   return csvSource(readFileSync(file, 'utf8'), file);
 }
 
-/** Writes the tables of a plan's results into its folder, and the scripts that rerun it. */
-function writeEstimates(
+/**
+ * Runs estimates on a results folder and writes their files into it. A study with `estimates:` ends with this.
+ *
+ * @param place - gives `file:line:column` of a part of the plan or study
+ * @throws {InputError} as runEstimates and openResults
+ */
+export async function estimateFolder(
   folder: string,
   estimates: readonly Estimate[],
-  results: PlanResults,
-  head: Readonly<Record<string, unknown>>,
-): void {
-  const draws = drawsCsv(results);
-  const files: Record<string, string> = {
-    'estimates.csv': estimatesCsv(results),
-    'estimates_summary.csv': summaryCsv(results),
-    'estimates.json': estimatesJson(results, head),
-    'panel.py': pythonScript(estimates),
-    'panel.R': rScript(estimates),
-    ...(draws === undefined ? {} : { 'estimates_draws.csv': draws }),
-  };
-  for (const [name, text] of Object.entries(files)) {
+  place: Placer,
+  options: RunOptions & { readonly plan?: string } = {},
+): Promise<PlanResults> {
+  const source = await panelSource(await openResults(folder), folder);
+  const results = await runEstimates(estimates, source, place, options);
+  const head = { source: folder, ...(options.plan === undefined ? {} : { plan: options.plan }) };
+  for (const [name, text] of Object.entries(estimateFiles(estimates, results, head))) {
     // under another name first, so that a kill leaves no half file
     const path = join(folder, name);
     writeFileSync(`${path}.writing`, text);
     renameSync(`${path}.writing`, path);
   }
+  return results;
 }
 
 /** One line of progress on a terminal; nothing elsewhere, the work being short. */

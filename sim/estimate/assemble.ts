@@ -65,7 +65,7 @@ export function assemble(frame: Frame, estimate: Estimate, place: string, seed: 
   }
   const chosen = rows.length;
 
-  const values = new TermValues(frame);
+  const values = new TermValues(frame, place);
   let outcome = values.of(estimate.outcome, rows)[0];
   let covariates = estimate.covariates.flatMap((term) => values.of(term, rows));
   let endogenous = estimate.endogenous?.flatMap((term) => values.of(term, rows));

@@ -1,7 +1,27 @@
 /**
- * The files of a plan's results: `estimates.csv`, `estimates_summary.csv` and `estimates.json`, as text.
+ * The files of a plan's results, as text: `estimates.csv`, `estimates_summary.csv`, `estimates.json`, scripts and draws.
  */
+import type { Estimate } from './plan.js';
 import type { EstimateResult, PlanResults } from './run.js';
+import { pythonScript } from './script-python.js';
+import { rScript } from './script-r.js';
+
+/** Every file that goes beside the panel: tables, JSON, and the scripts that rerun the plan, by name. */
+export function estimateFiles(
+  estimates: readonly Estimate[],
+  results: PlanResults,
+  head: Readonly<Record<string, unknown>> = {},
+): Readonly<Record<string, string>> {
+  const draws = drawsCsv(results);
+  return {
+    'estimates.csv': estimatesCsv(results),
+    'estimates_summary.csv': summaryCsv(results),
+    'estimates.json': estimatesJson(results, head),
+    'panel.py': pythonScript(estimates),
+    'panel.R': rScript(estimates),
+    ...(draws === undefined ? {} : { 'estimates_draws.csv': draws }),
+  };
+}
 
 /** `estimates.json`: every regression, the summaries over replicates, what failed. */
 export function estimatesJson(results: PlanResults, head: Readonly<Record<string, unknown>> = {}): string {

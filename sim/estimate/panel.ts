@@ -3,8 +3,16 @@
  * household. Reads one replicate at a time, and only the columns that are named. Same code in Node and browser.
  */
 import { InputError } from '../../network/errors.js';
-import type { ReadColumn, Results, TableData } from '../results/read.js';
-import type { Column, Frame, FrameSource } from './frame.js';
+import type { ReadColumn, Results } from '../results/read.js';
+import {
+  type Column,
+  type Frame,
+  type FrameSource,
+  frameSource,
+  type NumberColumn,
+  pick,
+  type TextColumn,
+} from './frame.js';
 
 /** Columns that say which row of `households` belongs to a row of the panel. */
 const KEYS = ['arm', 'replicate', 'household'];
@@ -34,6 +42,13 @@ export async function panelSource(results: Results, place: string): Promise<Fram
   const own = kindsOf('panel');
   const joined = new Map([...kindsOf('households')].filter(([name]) => !own.has(name)));
   let households: Promise<Households> | undefined;
+  // a CSV panel can only be read from end to end: once, and all of it
+  let whole: Promise<FrameSource> | undefined;
+  const fromCsv = async (): Promise<FrameSource> => {
+    const data = await panel.read();
+    const columns = new Map(data.names.map((name) => [name, asColumn(data.columns[name])]));
+    return frameSource({ rows: data.rows, columns }, place);
+  };
   const { arms, replicates } = results.manifest;
   return {
     place,
@@ -48,20 +63,30 @@ export async function panelSource(results: Results, place: string): Promise<Fram
       const extra = names.filter((name) => joined.has(name));
       const columns = new Set(names.filter((name) => own.has(name)));
       if (extra.length > 0) for (const key of KEYS) columns.add(key);
-      const data = await panel.read({
-        columns: [...columns],
-        ...(wantedArms === null ? {} : { arms: wantedArms }),
-        ...(replicate === null ? {} : { replicates: [replicate] }),
-      });
+      let rows: number;
       const frame = new Map<string, Column>();
-      for (const name of columns) if (names.includes(name)) frame.set(name, asColumn(data.columns[name]));
+      if (panel.groups === null) {
+        whole ??= fromCsv();
+        const read = await (await whole).read([...columns], wantedArms, replicate);
+        rows = read.rows;
+        for (const [name, column] of read.columns) frame.set(name, column);
+      } else {
+        const data = await panel.read({
+          columns: [...columns],
+          ...(wantedArms === null ? {} : { arms: wantedArms }),
+          ...(replicate === null ? {} : { replicates: [replicate] }),
+        });
+        rows = data.rows;
+        for (const name of columns) frame.set(name, asColumn(data.columns[name]));
+      }
       if (extra.length > 0) {
         households ??= loadHouseholds(results, place);
         const table = await households;
-        const rows = table.match(data);
-        for (const name of extra) frame.set(name, table.column(name, rows));
+        const own = table.match(frame);
+        for (const name of extra) frame.set(name, table.column(name, own));
       }
-      return { rows: data.rows, columns: frame } satisfies Frame;
+      for (const name of columns) if (!names.includes(name)) frame.delete(name);
+      return { rows, columns: frame } satisfies Frame;
     },
   };
 }
@@ -86,7 +111,7 @@ function asColumn(column: ReadColumn): Column {
 
 interface Households {
   /** Row of `households` for every row of a piece of the panel, −1 when none. */
-  match(panel: TableData): Int32Array;
+  match(panel: ReadonlyMap<string, Column>): Int32Array;
   column(name: string, rows: Int32Array): Column;
 }
 
@@ -100,41 +125,30 @@ async function loadHouseholds(results: Results, place: string): Promise<Househol
       remedy: 'run the study again',
     });
   }
-  const key = (data: TableData) => {
-    const arm = data.columns['arm'] as Exclude<ReadColumn, Float64Array | Int32Array>;
-    const replicate = data.columns['replicate'] as Int32Array;
-    const household = data.columns['household'] as Int32Array;
-    return { arm, replicate, household };
-  };
+  const all = new Map(table.names.map((name) => [name, asColumn(table.columns[name])]));
+  const keys = (columns: ReadonlyMap<string, Column>) => ({
+    arm: columns.get('arm') as TextColumn,
+    replicate: (columns.get('replicate') as NumberColumn).values,
+    household: (columns.get('household') as NumberColumn).values,
+  });
   // arm name, then replicate and household packed into one number
   const index = new Map<string, Map<number, number>>();
-  const { arm, replicate, household } = key(table);
+  const { arm, replicate, household } = keys(all);
   for (let i = 0; i < table.rows; i++) {
-    const name = arm.names[arm.codes[i]];
+    const name = arm.levels[arm.codes[i]];
     let inner = index.get(name);
     if (inner === undefined) index.set(name, (inner = new Map()));
     inner.set(replicate[i] * 2 ** 31 + household[i], i);
   }
   return {
     match(panel) {
-      const own = key(panel);
-      const byArm = own.arm.names.map((name) => index.get(name));
-      const rows = new Int32Array(panel.rows);
-      for (let i = 0; i < panel.rows; i++) {
-        rows[i] = byArm[own.arm.codes[i]]?.get(own.replicate[i] * 2 ** 31 + own.household[i]) ?? -1;
-      }
-      return rows;
+      const own = keys(panel);
+      const byArm = own.arm.levels.map((name) => index.get(name));
+      return Int32Array.from(
+        own.household,
+        (id, i) => byArm[own.arm.codes[i]]?.get(own.replicate[i] * 2 ** 31 + id) ?? -1,
+      );
     },
-    column(name, rows) {
-      const source = asColumn(table.columns[name]);
-      if (source.kind === 'number') {
-        const values = new Float64Array(rows.length);
-        for (let i = 0; i < rows.length; i++) values[i] = rows[i] < 0 ? NaN : source.values[rows[i]];
-        return { kind: 'number', values };
-      }
-      const codes = new Int32Array(rows.length);
-      for (let i = 0; i < rows.length; i++) codes[i] = rows[i] < 0 ? -1 : source.codes[rows[i]];
-      return { kind: 'text', codes, levels: source.levels };
-    },
+    column: (name, rows) => pick(all.get(name) as Column, rows),
   };
 }

@@ -5,10 +5,13 @@
 import { log } from '../../network/elementary.js';
 import { nearest } from '../../network/errors.js';
 import type { Path, StudyProblem } from '../study/problems.js';
-import type { Regressor } from './fit.js';
+import { type Regressor, refuse } from './fit.js';
 import type { Column, Frame } from './frame.js';
 import type { Estimate, Grouping, Term } from './plan.js';
 import { groupingsOf } from './plan.js';
+
+/** Dummies beyond this many cells would fill memory: 800 megabytes. */
+const MOST_DUMMY_CELLS = 1e8;
 
 type Kinds = ReadonlyMap<string, Column['kind']>;
 
@@ -172,8 +175,12 @@ export class TermValues {
   readonly #kinds: Kinds;
   readonly #dated = new Map<number, Int32Array>();
 
-  constructor(frame: Frame) {
+  readonly #place: string;
+
+  /** @param place - for messages */
+  constructor(frame: Frame, place: string) {
     this.#frame = frame;
+    this.#place = place;
     this.#kinds = new Map([...frame.columns].map(([name, column]) => [name, column.kind]));
   }
 
@@ -254,6 +261,14 @@ export class TermValues {
       for (let r = 0; r < n; r++) codes[r] = rows[r] < 0 ? NaN : column.values[rows[r]];
       label = String;
       present = [...new Set(codes)].filter((code) => !Number.isNaN(code)).sort((a, b) => a - b);
+    }
+    if (present.length * n > MOST_DUMMY_CELLS) {
+      refuse(
+        'too-many-dummies',
+        this.#place,
+        `{dummy: ${name}} makes ${present.length} terms over ${n} rows`,
+        `absorb it: effects: [${name}]`,
+      );
     }
     const chosen =
       base === undefined

@@ -3,9 +3,13 @@
  * Technology), with 15 digits: the classical path must give at least 9 of them, 7 on Filip, whose powers of x lose
  * that many to rounding before any arithmetic begins.
  */
+import { readFileSync } from 'node:fs';
 import { describe, expect, test } from 'vitest';
 import type { Regressor } from '../../sim/estimate/fit.js';
 import { ols } from '../../sim/estimate/ols.js';
+import { parsePlan } from '../../sim/estimate/plan.js';
+import { runEstimates } from '../../sim/estimate/run.js';
+import { csvSource } from '../../sim/estimate/table.js';
 import { checksOf, expectMatch } from './expected.js';
 import { Data, estimates, standardErrors } from './regression.js';
 
@@ -50,6 +54,20 @@ describe.each([
     }[what];
     expectMatch(actual, { ...check, rtol: Math.min(check.rtol, digits) }, `${set}.${what}`);
   });
+});
+
+test.each(['filip', 'wampler5'])('%s from a table and a plan', async (set) => {
+  const degree = DEGREE[set] ?? 5;
+  const terms = Array.from({ length: degree }, (_, d) => `{power: [x, ${d + 1}]}`);
+  const plan = parsePlan(`estimates: [{name: ${set}, outcome: y, covariates: [${terms.join(', ')}]}]`, 'plan.yaml');
+  const text = readFileSync(new URL(`reg-nist/${set}.csv`, import.meta.url), 'utf8');
+  const { estimates: found } = await runEstimates(plan.estimates, csvSource(text, `${set}.csv`), plan.place);
+  const rtol = set === 'filip' ? 1e-7 : 1e-9;
+  expectMatch(
+    found[0].terms.map((term) => term.estimate),
+    { ...checks[`${set}.coef`], rtol },
+    set,
+  );
 });
 
 function powers(x: Float64Array, degree: number): Regressor[] {

@@ -237,6 +237,19 @@ describe('a results folder', () => {
     expect(peers?.diagnostics.hansen_j?.df).toBe(1);
   });
 
+  test('gives the same from CSV', async () => {
+    const codebook = JSON.parse(new TextDecoder().decode(files.get('codebook.json'))) as {
+      resources: { path: string }[];
+    };
+    for (const resource of codebook.resources) resource.path = resource.path.replace('parquet', 'csv');
+    const other = new Map(files);
+    other.set('codebook.json', bytes(JSON.stringify(codebook)));
+    other.set('panel.csv', bytes(csv(panel)));
+    other.set('households.csv', bytes(csv(households)));
+    const source = await panelSource(await openSource(memorySource(other)), 'memory');
+    expect(await runEstimates(plan.estimates, source, plan.place)).toEqual(await results);
+  });
+
   test('reads no more of the panel than it needs', async () => {
     const source = await panelSource(await openSource(memorySource(files)), 'memory');
     const frame = await source.read(['degree', 'gap'], ['mixed'], 1);

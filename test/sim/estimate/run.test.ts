@@ -193,6 +193,20 @@ describe('terms', () => {
     expect(`${problems[0].problem}; ${problems[0].remedy}`).toMatch(message);
   });
 
+  test('a dummy for each of very many values is refused: absorbing does it', async () => {
+    const n = 20_000;
+    const columns = new Map<string, Column>([
+      ['y', numberColumn(Float64Array.from({ length: n }, (_, i) => i % 7))],
+      ['id', numberColumn(Float64Array.from({ length: n }, (_, i) => i >> 1))],
+    ]);
+    const problems = await problemsOf('estimates: [{name: A, outcome: y, covariates: [{dummy: id}]}]', {
+      rows: n,
+      columns,
+    });
+    expect(problems[0].code).toBe('too-many-dummies');
+    expect(problems[0].remedy).toContain('effects: [id]');
+  });
+
   test('a lag needs to know who and when', async () => {
     const frame = panel();
     const columns = new Map(frame.columns);
