@@ -8,7 +8,7 @@
 import { neighbourMeans, secondCircleMeans } from '../../network/measure/neighbours.js';
 import { unitRanks } from '../measure/order.js';
 import type { ArmRecord, GenerationRecord } from '../study/record.js';
-import type { ExtraName, Facts } from './facts.js';
+import { EXTRA_NAMES, type ExtraName, type Facts } from './facts.js';
 import type { Column, Field } from './field.js';
 
 /** Values measured outside the engine for one generation, n long each. */
@@ -81,6 +81,9 @@ function extra(context: PanelContext, name: ExtraName): Column {
 
 const label = { unit: '', missing: null } as const;
 const NO_TIES = 'the household has no ties';
+
+/** Measured columns that stand after the others. */
+const ON_TOP: readonly ExtraName[] = ['contrast_frustrated', 'local_moran', 'local_moran_p'];
 
 /** Columns of the panel, in order. */
 export function panelColumns(facts: Facts): PanelColumn[] {
@@ -350,11 +353,32 @@ export function panelColumns(facts: Facts): PanelColumn[] {
       formula: '1 or 0',
       missing: null,
     },
+    contrast_frustrated: {
+      type: 'flag',
+      unit: '',
+      meaning: 'Whether the same household is frustrated in the other arm in the same generation and replicate.',
+      formula: '1 or 0; the other arm is the study’s first, and for the first arm the second',
+      missing: null,
+    },
+    local_moran: {
+      type: 'number',
+      unit: '',
+      meaning: 'Local Moran statistic of log wealth: above 0 where ties are alike, below 0 where they differ.',
+      formula: 'z_i · mean of z over its ties, z standardised log wealth (Anselin 1995)',
+      missing: NO_TIES,
+    },
+    local_moran_p: {
+      type: 'number',
+      unit: '',
+      meaning: 'Two-sided p-value of the local Moran statistic by conditional permutation.',
+      formula: 'twice the smaller tail among random sets of as many others, at most 1',
+      missing: NO_TIES,
+    },
   };
-  for (const name of Object.keys(measured) as ExtraName[]) {
-    if (!facts.extras.includes(name)) continue;
-    columns.push({ ...measured[name], name, fill: (context) => extra(context, name) });
-  }
+  const add = (name: ExtraName): void => {
+    if (facts.extras.includes(name)) columns.push({ ...measured[name], name, fill: (context) => extra(context, name) });
+  };
+  for (const name of EXTRA_NAMES) if (!ON_TOP.includes(name)) add(name);
   columns.push({
     ...label,
     name: 'treated',
@@ -363,5 +387,6 @@ export function panelColumns(facts: Facts): PanelColumn[] {
     formula: '1 or 0; 0 where the study changes nothing',
     fill: ({ arm }) => arm.treated ?? { value: 0 },
   });
+  for (const name of ON_TOP) add(name);
   return columns;
 }

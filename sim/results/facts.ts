@@ -5,7 +5,16 @@
 import type { Covariate } from '../study/record.js';
 
 /** Panel columns whose values come from measures outside the engine, handed over with each generation. */
-export const EXTRA_NAMES = ['pocket', 'pocket_role', 'cause', 'sheltered', 'complacent'] as const;
+export const EXTRA_NAMES = [
+  'pocket',
+  'pocket_role',
+  'cause',
+  'sheltered',
+  'complacent',
+  'contrast_frustrated',
+  'local_moran',
+  'local_moran_p',
+] as const;
 export type ExtraName = (typeof EXTRA_NAMES)[number];
 
 /** A measured column as its registry describes it. */
@@ -29,7 +38,7 @@ export interface Facts {
   readonly extras: readonly ExtraName[];
   /** Covariates of the household file. */
   readonly covariates: readonly { readonly name: string; readonly type: 'number' | 'text' }[];
-  /** True when places have names besides their numbers. */
+  /** True when households come from a file: places have names besides their numbers, households their ids. */
   readonly placeNames: boolean;
   /** True when the household table has betweenness (costs a search from every household: small populations only). */
   readonly betweenness: boolean;

@@ -254,6 +254,7 @@ function householdBatch(facts: Facts, record: ArmRecord): Batch {
     { value: record.arm },
     { value: record.replicate },
     number,
+    ...(facts.placeNames ? [{ codes: number, names: record.householdIds ?? placeNumbers(n) }] : []),
     households.place,
     ...(facts.placeNames
       ? [{ codes: households.place, names: record.placeNames ?? placeNumbers(households.places) }]

@@ -5,13 +5,15 @@
  * the same bytes come out on disk and in the browser.
  */
 
+import type { ArmNetwork } from '../study/networks.js';
 import { studyText } from '../study/parse.js';
-import type { Prepared } from '../study/replicate.js';
-import { simulate } from '../study/replicate.js';
+import type { Recorder } from '../study/record.js';
+import { type Prepared, simulate } from '../study/replicate.js';
 import { BETWEENNESS_LIMIT, covariateFacts, type Facts } from './facts.js';
-import { Measured, measureFacts } from './measured.js';
+import { Measured, measureFacts, type OtherArm } from './measured.js';
 import { PartWriter } from './parts.js';
 import type { Store } from './store.js';
+import { keepsReplicate } from './thin.js';
 
 /** Number of households of a study. */
 export function householdsOf(prepared: Prepared): number {
@@ -61,14 +63,40 @@ export function runReplicate(
     keep: study.keep.panel as ConstructorParameters<typeof PartWriter>[0]['keep'],
     replicate,
   });
-  const measured = new Measured(study, writer);
-  simulate(prepared, replicate, {
+  const networks = new Map<string, ArmNetwork>();
+  const others =
+    facts.extras.includes('contrast_frustrated') && keepsReplicate(study.keep.panel, replicate)
+      ? firstArms(prepared, replicate, networks)
+      : [];
+  // the first arm is compared with the second, every other one with the first
+  const measured = new Measured(study, writer, (arm) => others[arm === 0 ? 1 : 0] ?? null);
+  const recorder: Recorder = {
     armStarts: (record) => measured.armStarts(record),
     generation: (record) => {
       measured.generation(record);
       if (record.decided) onGeneration();
     },
     armEnds: () => measured.armEnds(),
-  });
+  };
+  simulate(prepared, replicate, recorder, undefined, networks);
   writer.commit();
+}
+
+/** Who is frustrated in the first two arms, generation by generation: a run of its own, before the one that is written. */
+function firstArms(prepared: Prepared, replicate: number, networks: Map<string, ArmNetwork>): OtherArm[] {
+  const arms: Uint8Array[][] = [];
+  const recorder: Recorder = {
+    armStarts: () => arms.push([]),
+    generation: ({ decided, columns }) => {
+      if (!decided) return;
+      const { met } = columns;
+      const frustrated = new Uint8Array(met.length);
+      for (let i = 0; i < met.length; i++) frustrated[i] = met[i] === 0 ? 1 : 0;
+      arms.at(-1)!.push(frustrated);
+    },
+    armEnds: () => {},
+  };
+  const names = prepared.study.arms.slice(0, 2).map((arm) => arm.name);
+  simulate(prepared, replicate, recorder, names, networks);
+  return arms;
 }

@@ -100,6 +100,17 @@ export function tablesOf(facts: Facts): Table[] {
         arm,
         replicate,
         shared('household'),
+        ...(facts.placeNames
+          ? [
+              field(
+                'household_id',
+                'text',
+                '',
+                'Id of the household in the household file.',
+                'as in the household file',
+              ),
+            ]
+          : []),
         shared('place'),
         ...(facts.placeNames
           ? [field('place_name', 'text', '', 'Name of the place.', 'as in the household file')]

@@ -25,6 +25,7 @@ export interface ArmNetwork {
 /**
  * Builds the networks of the given arms and of the arms these derive from.
  *
+ * @param built - networks of this replicate that are there already; new ones are added
  * @throws {InputError} when a network cannot be built or a mixing target is out of reach; the place names the arm
  */
 export function buildNetworks(
@@ -32,8 +33,8 @@ export function buildNetworks(
   population: Population,
   replicate: number,
   arms: readonly ArmFile[],
+  built: Map<string, ArmNetwork> = new Map(),
 ): Map<string, ArmNetwork> {
-  const built = new Map<string, ArmNetwork>();
   const visit = (arm: ArmFile): ArmNetwork => {
     let network = built.get(arm.name);
     if (network === undefined) {

@@ -20,6 +20,7 @@ export interface Population {
   readonly places: number;
   readonly groupNames: readonly string[];
   readonly placeNames: readonly string[] | null;
+  readonly householdIds: readonly string[] | null;
   readonly covariates: readonly Covariate[];
   /** Standard normal draw of each household behind its child weight. */
   readonly tasteDraw: Float64Array;
@@ -41,6 +42,7 @@ export function drawPopulation(study: Study, inputs: Inputs, draws: Draws): Popu
       places: file.placeNames.length,
       groupNames: file.groupNames,
       placeNames: file.placeNames,
+      householdIds: file.ids,
       covariates: file.covariates,
       tasteDraw,
     };
@@ -69,6 +71,7 @@ export function drawPopulation(study: Study, inputs: Inputs, draws: Draws): Popu
     places,
     groupNames: groups.map((g) => g.name),
     placeNames: null,
+    householdIds: null,
     covariates: [],
     tasteDraw,
   };

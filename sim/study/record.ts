@@ -5,6 +5,7 @@
  * it wants to keep. Knows nothing of files.
  */
 import type { Labels, Ties } from '../../network/graph.js';
+import type { Resolved } from '../model/generation.js';
 import type { Generation, Households, Model } from '../model/types.js';
 
 /** A covariate of the household file, one value a household. */
@@ -28,6 +29,8 @@ export interface ArmRecord {
   readonly groupNames: readonly string[];
   /** Names of places as in the household file, or null when places are numbers. */
   readonly placeNames: readonly string[] | null;
+  /** Ids of the household file in the order of its rows, or null when households are drawn. */
+  readonly householdIds: readonly string[] | null;
   readonly covariates: readonly Covariate[];
   /** 1 when any change of the study ever acts on the household in this arm; null while no study has changes. */
   readonly treated: Uint8Array | null;
@@ -63,6 +66,8 @@ export interface GenerationRecord {
   /** Wealth of generation t − 1 by household; null at t = 0. */
   readonly parentWealth: Float64Array | null;
   readonly ties: Ties;
+  /** What every household would do with the society-wide mean as its whole reference, all else equal; null at T. */
+  readonly underSociety: (() => Resolved) | null;
   /** True when ties differ from the previous generation's (always true at t = 0). */
   readonly tiesChanged: boolean;
 }

@@ -4,12 +4,12 @@
  * Pure: no files, no clock. Hands each generation to a recorder and keeps nothing.
  */
 import { RunError } from '../../network/errors.js';
-import { createEngine, makeGeneration } from '../model/generation.js';
+import { createEngine, makeGeneration, withReference } from '../model/generation.js';
 import { Draws } from '../random/draws.js';
 import { compileHouseholds, compileModel } from './compile.js';
 import type { Study } from './complete.js';
 import type { Inputs } from './inputs.js';
-import { buildNetworks } from './networks.js';
+import { type ArmNetwork, buildNetworks } from './networks.js';
 import { drawPopulation } from './population.js';
 import type { Recorder } from './record.js';
 
@@ -25,15 +25,22 @@ export interface Prepared {
  * @param replicate - 0 … replicates − 1
  * @param recorder - told of arms and generations in order; columns are overwritten after each call
  * @param only - arms to simulate (their sources are built, not simulated); all when left out
+ * @param built - networks of this replicate built before; those missing are added
  * @throws {RunError} when wealth leaves the range of numbers, with arm and generation
  */
-export function simulate(prepared: Prepared, replicate: number, recorder: Recorder, only?: readonly string[]): void {
+export function simulate(
+  prepared: Prepared,
+  replicate: number,
+  recorder: Recorder,
+  only?: readonly string[],
+  built: Map<string, ArmNetwork> = new Map(),
+): void {
   const { study, inputs } = prepared;
   const draws = new Draws(study.seed, replicate);
   const population = drawPopulation(study, inputs, draws);
   const { n, wealth } = population.labels;
   const arms = only === undefined ? study.arms : study.arms.filter((arm) => only.includes(arm.name));
-  const networks = buildNetworks(prepared, population, replicate, arms);
+  const networks = buildNetworks(prepared, population, replicate, arms, built);
   const milestones = Math.max(...arms.map((arm) => (arm.reference?.milestones ?? study.reference.milestones).length));
 
   const columns = makeGeneration(n, milestones);
@@ -54,6 +61,7 @@ export function simulate(prepared: Prepared, replicate: number, recorder: Record
       labels: population.labels,
       groupNames: population.groupNames,
       placeNames: population.placeNames,
+      householdIds: population.householdIds,
       covariates: population.covariates,
       treated: null,
       model,
@@ -61,8 +69,10 @@ export function simulate(prepared: Prepared, replicate: number, recorder: Record
       network: report,
     });
     own.wealth.set(wealth);
+    const society = withReference(model, 'society', 'mean');
     for (let t = 0; t < study.generations; t++) {
-      engine.step(draws, t, own, t === 0 || model.persistence === 0 ? null : inherited);
+      const from = t === 0 || model.persistence === 0 ? null : inherited;
+      engine.step(draws, t, own, from);
       checkRange(own.childWealth, arm.name, t);
       recorder.generation({
         generation: t,
@@ -70,6 +80,7 @@ export function simulate(prepared: Prepared, replicate: number, recorder: Record
         columns: own,
         parentWealth: t === 0 ? null : parentWealth,
         ties,
+        underSociety: () => engine.resolveUnder(society, own, from),
         tiesChanged: t === 0,
       });
       if (model.persistence > 0) own.aspirations.forEach((column, m) => void inherited[m]!.set(column));
@@ -82,6 +93,7 @@ export function simulate(prepared: Prepared, replicate: number, recorder: Record
       columns: own,
       parentWealth,
       ties,
+      underSociety: null,
       tiesChanged: false,
     });
     recorder.armEnds();

@@ -10,11 +10,11 @@ import { MAIN, rungsight, temporaryFolder } from './command.js';
 
 const STUDY = `study: Stopped and resumed
 seed: resume-1
-replicates: 8
-generations: 6
+replicates: 6
+generations: 8
 population:
-  households: 1500
-  places: 20
+  households: 500
+  places: 10
   wealth: {shape: lognormal, mean: 50, sd_log: 0.6, between_places: 0.5}
 technology: {kind: concave, scale: 8, elasticity: 0.6}
 shock: {sd_log: 0.2}
@@ -33,11 +33,11 @@ arms:
 keep: {formats: [parquet, csv]}
 `;
 
-/** Starts the command and kills it after some milliseconds; true when it had ended by itself. */
+/** Starts the command and kills it after some milliseconds, or once its first part is on disk. */
 function killed(
   args: readonly string[],
   cwd: string,
-  after: number,
+  after: number | 'begun',
   signal: NodeJS.Signals,
 ): Promise<{ ended: boolean; err: string; status: number | null }> {
   return new Promise((done) => {
@@ -46,7 +46,18 @@ function killed(
     child.stderr.on('data', (chunk) => {
       err += chunk;
     });
-    const timer = setTimeout(() => child.kill(signal), after);
+    const begun = (): boolean => {
+      const parts = join(cwd, `${args[args.indexOf('--out') + 1]}.partial`, 'parts');
+      return existsSync(parts) && readdirSync(parts).length > 0;
+    };
+    const timer =
+      after === 'begun'
+        ? setInterval(() => {
+            if (!begun()) return;
+            clearInterval(timer);
+            child.kill(signal);
+          }, 20)
+        : setTimeout(() => child.kill(signal), after);
     child.on('exit', (status) => {
       clearTimeout(timer);
       done({ ended: status === 0, err, status });
@@ -68,7 +79,9 @@ describe('a stopped run', () => {
   writeFileSync(join(folder, 's.yaml'), STUDY);
 
   test('killed at random moments and resumed gives the same bytes as one that was not', async () => {
+    const began = performance.now();
     const straight = rungsight(['run', 's.yaml', '--out', 'straight'], folder);
+    const whole = performance.now() - began;
     expect(straight.status).toBe(0);
 
     const random = seedrandom('moments');
@@ -77,22 +90,23 @@ describe('a stopped run', () => {
     for (let tries = 0; tries < 25 && !ended; tries++) {
       const resumable = existsSync(join(folder, 'stopped.partial', 'manifest.json'));
       const args = resumable ? ['run', '--resume', 'stopped'] : ['run', 's.yaml', '--out', 'stopped'];
-      // some kills come before the first file is there, some in the middle of the tables; later ones give it time to end
-      const result = await killed(args, folder, 250 + random() * (400 + 250 * tries), 'SIGKILL');
-      ended = result.ended;
+      // anywhere in a run's length, so also before the first file and while tables are written; later ones let it end
+      const result = await killed(args, folder, whole * (0.2 + random() * (0.6 + tries / 10)), 'SIGKILL');
+      // killed after its last file: the folder is whole all the same
+      ended = result.ended || existsSync(join(folder, 'stopped', 'manifest.json'));
       if (!ended) kills++;
     }
     expect(ended).toBe(true);
     expect(kills).toBeGreaterThan(2);
     expect(hashes(join(folder, 'stopped'))).toEqual(hashes(join(folder, 'straight')));
     expect(readdirSync(folder).filter((name) => name.startsWith('stopped'))).toEqual(['stopped']);
-  });
+  }, 240_000);
 
   test('Ctrl-C says what is kept and how to go on', async () => {
-    const result = await killed(['run', 's.yaml', '--out', 'interrupted', '--threads', '1'], folder, 1500, 'SIGINT');
+    const result = await killed(['run', 's.yaml', '--out', 'interrupted', '--threads', '1'], folder, 'begun', 'SIGINT');
     expect(result.status).toBe(1);
     expect(result.err).toContain(
-      'of 8 replicates are kept in interrupted.partial; go on with: rungsight run --resume interrupted',
+      'of 6 replicates are kept in interrupted.partial; go on with: rungsight run --resume interrupted',
     );
     expect(result.err).not.toContain(' at ');
     const manifest = JSON.parse(readFileSync(join(folder, 'interrupted.partial', 'manifest.json'), 'utf8')) as {

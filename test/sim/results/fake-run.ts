@@ -98,6 +98,7 @@ export function playArm(
     labels: { n, place, group, wealth: numbers() },
     groupNames: ['lowland', 'ไทย, "up"'],
     placeNames: PLACE_NAMES,
+    householdIds: null,
     covariates: [
       { name: 'x_age', values: Float64Array.from({ length: n }, (_, i) => (i % 4 === 0 ? Number.NaN : 20 + i)) },
       { name: 'x_language', values: Array.from({ length: n }, (_, i) => (i % 3 === 0 ? null : `tongue ${i % 2}`)) },
@@ -133,7 +134,15 @@ export function playArm(
       pocket_role: { codes: Uint8Array.from(pocket, (p) => (p < 0 ? 255 : p % 2)), names: ['core', 'fringe'] },
     };
     on.generation(
-      { generation: t, decided: t < generations, columns, parentWealth: null, ties, tiesChanged: changed },
+      {
+        generation: t,
+        decided: t < generations,
+        columns,
+        parentWealth: null,
+        ties,
+        underSociety: null,
+        tiesChanged: changed,
+      },
       extras,
     );
   }
