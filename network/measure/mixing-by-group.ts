@@ -62,7 +62,10 @@ export function sameShare(counts: GroupTies): number {
 /** Share of ties that would stay if ends were matched at random: Σ (ends of g / ends)². */
 function chanceShare(counts: GroupTies): number {
   let sum = 0;
-  for (let g = 0; g < counts.groups; g++) sum += (counts.ends[g] / counts.totalEnds) ** 2;
+  for (let g = 0; g < counts.groups; g++) {
+    const share = counts.ends[g] / counts.totalEnds;
+    sum += share * share;
+  }
   return sum;
 }
 
