@@ -7,12 +7,19 @@
  */
 import type { Ties } from '../../network/graph.js';
 
+/** Two SVG paths: the body to stroke thickly, and long ties between parts of it, to stroke thinly. */
+export interface Sleeve {
+  readonly body: string;
+  readonly links: string;
+}
+
 /**
  * @param members - household indices of one pocket's core
  * @param positions - x, y by household, length 2 n
- * @returns an SVG path. Cost O(m log m) in the ties among members.
+ * @param long - length from which a tie is a link between parts, in the unit of the positions
+ * @returns see {@link Sleeve}. Cost O(m log m) in the ties among members.
  */
-export function sleeve(members: readonly number[], ties: Ties, positions: Float32Array): string {
+export function sleeve(members: readonly number[], ties: Ties, positions: Float32Array, long: number): Sleeve {
   const slot = new Map<number, number>();
   members.forEach((i, k) => {
     slot.set(i, k);
@@ -38,17 +45,22 @@ export function sleeve(members: readonly number[], ties: Ties, positions: Float3
     }
     return r;
   };
-  let path = '';
+  let body = '';
+  let links = '';
   const at = (i: number): string => `${positions[2 * i].toFixed(1)} ${positions[2 * i + 1].toFixed(1)}`;
   const touched = new Set<number>();
-  for (const { a, b } of edges) {
+  for (const { a, b, length } of edges) {
     const ra = root(slot.get(a) as number);
     const rb = root(slot.get(b) as number);
     if (ra === rb) continue;
     parent[ra] = rb;
+    if (length > long * long) {
+      links += `M${at(a)}L${at(b)}`;
+      continue;
+    }
     touched.add(a).add(b);
-    path += `M${at(a)}L${at(b)}`;
+    body += `M${at(a)}L${at(b)}`;
   }
-  for (const i of members) if (!touched.has(i)) path += `M${at(i)}h0.01`;
-  return path;
+  for (const i of members) if (!touched.has(i)) body += `M${at(i)}h0.01`;
+  return { body, links };
 }

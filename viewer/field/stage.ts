@@ -15,7 +15,7 @@ import type { Box, FieldCanvas } from './canvas.js';
 import { dress } from './colouring.js';
 import { FieldMarks } from './marks.js';
 import { type ArmScene, looksUpTo, type Scene } from './scene.js';
-import { sleeve } from './sleeve.js';
+import { type Sleeve, sleeve } from './sleeve.js';
 
 export interface StageEvents {
   /** A household was picked (index in the cast) in a field, or the ground (−1). */
@@ -31,7 +31,7 @@ interface Field {
   to: Float32Array;
   index: KDBush | null;
   tiesDrawn: object | null;
-  sleeves: { id: number; path: string; pValue: number }[];
+  sleeves: (Sleeve & { id: number })[];
   /** Share of households whose status changed. */
   changed: number;
 }
@@ -174,11 +174,7 @@ export class Stage {
         field.marks?.tie(arm.ties);
         field.tiesDrawn = arm.ties;
       }
-      field.sleeves = arm.pockets.map((p) => ({
-        id: p.id,
-        path: sleeve(p.members, arm.ties, field.to),
-        pValue: p.pValue,
-      }));
+      field.sleeves = sleevesOf(arm, field);
     });
     if (moved || last === null || last.colouring !== scene.colouring) this.#dressAll(glides ? last : null);
     this.#ask();
@@ -242,7 +238,7 @@ export class Stage {
         f.from = f.to;
         f.index = null;
         f.marks?.place(f.from, f.to);
-        f.sleeves = arm.pockets.map((p) => ({ id: p.id, path: sleeve(p.members, arm.ties, f.to), pValue: p.pValue }));
+        f.sleeves = sleevesOf(arm, f);
       });
     }
     this.drawNow();
@@ -357,7 +353,11 @@ export class Stage {
     }
     this.#lastFrame = moving ? now : 0;
     if (moving) this.#ask();
-    else if (this.#wasMoving || (this.#arrived >= 0 && now - this.#arrived < FADE)) this.#ask();
+    else if (this.#wasMoving) this.#ask();
+    else if (this.#arrived >= 0) {
+      if (now - this.#arrived >= FADE) this.#arrived = -1;
+      this.#ask();
+    }
     this.#wasMoving = moving;
   }
 
@@ -460,10 +460,12 @@ export class Stage {
         return svg`<svg x=${f.box.x} y=${f.box.y} width=${f.box.width} height=${f.box.height}>
           ${lines}
           <g transform="translate(${x} ${y}) scale(${zoom})">
-          ${f.sleeves.map(
-            (s) => svg`<path class=${`sleeve${scene.pocket[k] === s.id ? ' chosen' : ''}`} d=${s.path}
-              stroke-width=${width / zoom} opacity=${(scene.pocket[k] === s.id ? 1.9 : 1) * 0.17 * fresh}></path>`,
-          )}
+          ${f.sleeves.map((s) => {
+            const name = `sleeve${scene.pocket[k] === s.id ? ' chosen' : ''}`;
+            const strength = (scene.pocket[k] === s.id ? 2 : 1) * 0.17 * fresh;
+            return svg`<g opacity=${strength}><path class=${name} d=${s.body} stroke-width=${width / zoom}></path>
+              <path class=${name} d=${s.links} stroke-width=${(0.16 * width) / zoom}></path></g>`;
+          })}
           </g></svg>`;
       })}`,
       this.#under as unknown as HTMLElement,
@@ -630,6 +632,11 @@ export class Stage {
   #hoverOnly(): void {
     if (this.#scene !== null) this.#layers(this.#scene, ease(this.#glide));
   }
+}
+
+function sleevesOf(arm: ArmScene, field: Field): (Sleeve & { id: number })[] {
+  const long = 0.11 * Math.min(field.box.width, field.box.height * 1.6);
+  return arm.pockets.map((p) => ({ id: p.id, ...sleeve(p.members, arm.ties, field.to, long) }));
 }
 
 function inset(box: Box): Box {

@@ -115,7 +115,29 @@ export class App {
     new ResizeObserver(() => this.#measurePanel()).observe(this.mount.querySelector('.drawer') as HTMLElement);
     this.#measurePanel();
     this.#caution();
+    if (!location.hash.includes('generation=')) await this.#whereArmsPart();
     await this.load();
+  }
+
+  /** Starts at the generation in which the two arms differ most: that is what the study is about. */
+  async #whereArmsPart(): Promise<void> {
+    const { info } = this.source;
+    const [left, right] = [this.view.left, this.view.right];
+    if (left === right) return;
+    const shares = sharesOf(
+      await this.source.table('indicators'),
+      info.arms.map((a) => a.name),
+      info.generations,
+      this.view.replicate,
+    );
+    let most = 0;
+    for (let t = 0; t < info.generations; t += info.every) {
+      const apart = Math.abs(shares[left][t] - shares[right][t]);
+      if (apart > most) {
+        most = apart;
+        this.view = { ...this.view, generation: t };
+      }
+    }
   }
 
   /** Shows another study. */
@@ -127,6 +149,7 @@ export class App {
     this.#layouts.clear();
     const view = keepView ? this.view : { ...START, arrangement: this.view.arrangement, tab: this.view.tab };
     this.view = this.#allowed({ ...view, pocket: null });
+    if (!keepView) await this.#whereArmsPart();
     await this.load(true);
   }
 
