@@ -99,7 +99,7 @@ export class Results {
   readonly manifest: Manifest;
   readonly codebook: Codebook;
   readonly #source: Source;
-  #panel: Promise<PanelReader | null> | null = null;
+  readonly #pieces = new Map<string, Promise<PanelReader | null>>();
 
   constructor(source: Source, manifest: Manifest, codebook: Codebook) {
     this.#source = source;
@@ -136,10 +136,24 @@ export class Results {
     return readCsv(file, types, () => true, null);
   }
 
+  /** Another text file of the folder, or null when it is not there. */
+  async text(name: string): Promise<string | null> {
+    return (await this.#source.open(name)) === null ? null : textOf(this.#source, name);
+  }
+
   /** The panel, or null when the study kept none. */
   panel(): Promise<PanelReader | null> {
-    this.#panel ??= openPanel(this.#source, this.codebook);
-    return this.#panel;
+    return this.pieces('panel');
+  }
+
+  /** A table whose rows stand arm by arm and replicate by replicate (panel, households, ties), to read in pieces. */
+  pieces(name: 'panel' | 'households' | 'ties'): Promise<PanelReader | null> {
+    let found = this.#pieces.get(name);
+    if (found === undefined) {
+      found = openPieces(this.#source, this.codebook, name);
+      this.#pieces.set(name, found);
+    }
+    return found;
   }
 }
 
@@ -156,8 +170,8 @@ function typesOf(resource: Resource): Map<string, FieldType> {
   );
 }
 
-async function openPanel(source: Source, codebook: Codebook): Promise<PanelReader | null> {
-  const resource = codebook.resources.find((one) => one.name === 'panel');
+async function openPieces(source: Source, codebook: Codebook, name: string): Promise<PanelReader | null> {
+  const resource = codebook.resources.find((one) => one.name === name);
   if (resource === undefined) return null;
   const parquet = parquetPath(resource);
   const file = await source.open(parquet ?? resource.path);
@@ -175,7 +189,7 @@ async function openPanel(source: Source, codebook: Codebook): Promise<PanelReade
     : new PanelReader(file, types, await parquetMetadataAsync(file));
 }
 
-/** Reads pieces of the panel. From CSV every read goes through the whole file. */
+/** Reads pieces of the panel, or of a table in the same order. From CSV every read goes through the whole file. */
 export class PanelReader {
   readonly names: readonly string[];
   /** Row groups in the order of the file; null when the panel is CSV. */
@@ -189,7 +203,7 @@ export class PanelReader {
     this.#types = types;
     this.#metadata = metadata;
     this.names = [...types.keys()];
-    this.groups = metadata === null ? null : groupsOf(metadata);
+    this.groups = metadata === null ? null : groupsOf(metadata, types);
   }
 
   /**
@@ -248,14 +262,15 @@ interface RowRange {
   readonly to: number;
 }
 
-function groupsOf(metadata: FileMetaData): PanelGroup[] {
+function groupsOf(metadata: FileMetaData, types: ReadonlyMap<string, FieldType>): PanelGroup[] {
   let rowStart = 0;
   return metadata.row_groups.map((group) => {
     const bounds = (name: string): [unknown, unknown] => {
       const at = group.columns.find((column) => column.meta_data?.path_in_schema[0] === name)?.meta_data?.statistics;
       return [at?.min_value, at?.max_value];
     };
-    const [from, to] = bounds('generation');
+    // a table without generations is read whole
+    const [from, to] = types.has('generation') ? bounds('generation') : [0, 0];
     const rows = Number(group.num_rows);
     const out = {
       arm: String(bounds('arm')[0]),

@@ -15,7 +15,7 @@ export interface Interval {
 
 /** Height a figure of so many rows needs. */
 export function intervalsHeight(rows: number): number {
-  return rows * 20 + 30;
+  return rows * 20 + 38;
 }
 
 export function intervalsFigure(
@@ -30,7 +30,7 @@ export function intervalsFigure(
 ): string {
   const named = o.names ?? short;
   const left = Math.min(0.45 * size.width, Math.max(60, ...rows.map((r) => textWidth(r.name))) + 12);
-  const room = { left, right: size.width - 12, top: 4, bottom: size.height - 26 };
+  const room = { left, right: size.width - 12, top: 4, bottom: size.height - 34 };
   const finite = rows.flatMap((r) => [r.low, r.high, r.estimate]).filter(Number.isFinite);
   const x = scaleLinear()
     .domain([Math.min(0, ...finite), Math.max(0, ...finite)])

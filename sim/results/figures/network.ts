@@ -20,18 +20,23 @@ export interface NetworkOnPaper {
 const SIDE = 520;
 const MARGIN = 8;
 
-/** From a layout's units to the square, keeping the shape. */
+/** Share of households at each end that may lie outside the frame, and the room left round the others. */
+const OUTSIDE = 0.005;
+const ROOM = 1.1;
+
+/** From a layout's units to the square, keeping the shape; the few that lie far out stand at the edge. */
 function placer(positions: ArrayLike<number>): (i: number) => readonly [number, number] {
-  let [left, right, top, bottom] = [Infinity, -Infinity, Infinity, -Infinity];
-  for (let k = 0; k < positions.length; k += 2) {
-    left = Math.min(left, positions[k]);
-    right = Math.max(right, positions[k]);
-    top = Math.min(top, positions[k + 1]);
-    bottom = Math.max(bottom, positions[k + 1]);
-  }
-  const scale = (SIDE - 2 * MARGIN) / Math.max(right - left, bottom - top, 1e-9);
+  const n = positions.length / 2;
+  const ends = (offset: number): readonly [number, number] => {
+    const sorted = Float64Array.from({ length: n }, (_, i) => positions[2 * i + offset]).sort();
+    return [sorted[Math.floor(OUTSIDE * (n - 1))], sorted[Math.ceil((1 - OUTSIDE) * (n - 1))]];
+  };
+  const [left, right] = ends(0);
+  const [top, bottom] = ends(1);
+  const scale = (SIDE - 2 * MARGIN) / Math.max(ROOM * (right - left), ROOM * (bottom - top), 1e-9);
   const [x0, y0] = [SIDE / 2 - (scale * (left + right)) / 2, SIDE / 2 - (scale * (top + bottom)) / 2];
-  return (i) => [Math.round(x0 + scale * positions[2 * i]), Math.round(y0 + scale * positions[2 * i + 1])];
+  const hold = (v: number): number => Math.max(MARGIN, Math.min(SIDE - MARGIN, Math.round(v)));
+  return (i) => [hold(x0 + scale * positions[2 * i]), hold(y0 + scale * positions[2 * i + 1])];
 }
 
 /**
