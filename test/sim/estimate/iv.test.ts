@@ -1,3 +1,4 @@
+import { inverse, Matrix, solve } from 'ml-matrix';
 import { describe, expect, test } from 'vitest';
 import type { Sample } from '../../../sim/estimate/fit.js';
 import { iv } from '../../../sim/estimate/iv.js';
@@ -153,3 +154,82 @@ describe('two-stage least squares', () => {
     expect(() => iv({ ...sample(y, []), endogenous: [x], instruments: [z] })).toThrow(/do not move x/);
   });
 });
+
+describe('robust and clustered diagnostics against dense formulas', () => {
+  const base = simulated('dense', 0.3, 120, 3);
+  const place = grouping('place', 120, (i) => i % 24);
+  const n = 120;
+  const q = 3;
+  const y = Matrix.columnVector(base.outcome.values);
+  const x = Matrix.columnVector(base.endogenous[0].values);
+  const one = Matrix.ones(n, 1);
+  const W = hstack(one, Matrix.columnVector(base.covariates[0].values));
+  const Z = hstack(...(base.instruments ?? []).map((z) => Matrix.columnVector(z.values)));
+  const residual = (v: Matrix, on: Matrix): Matrix => Matrix.sub(v, on.mmul(solve(on, v)));
+  const yt = residual(y, W);
+  const xt = residual(x, W);
+  const Zt = residual(Z, W);
+
+  /** Σ over clusters (or rows) of the outer product of summed scores. */
+  const meat = (scores: Matrix, clustered: boolean): Matrix => {
+    const G = clustered ? 24 : n;
+    const sums = Matrix.zeros(G, scores.columns);
+    for (let i = 0; i < n; i++) {
+      for (let c = 0; c < scores.columns; c++) sums.set(i % G, c, sums.get(i % G, c) + scores.get(i, c));
+    }
+    return sums.transpose().mmul(sums);
+  };
+  const rowsTimes = (M: Matrix, v: Matrix): Matrix => {
+    const out = M.clone();
+    for (let i = 0; i < n; i++) out.mulRow(i, v.get(i, 0));
+    return out;
+  };
+  const form = (A: Matrix, v: Matrix): number => v.transpose().mmul(inverse(A)).mmul(v).get(0, 0);
+
+  test.each([false, true])('Hansen J, effective F and Anderson–Rubin, clustered %s', (clustered) => {
+    const fit = iv({ ...base, errors: clustered ? 'clustered' : 'robust', clusters: clustered ? [place] : [] });
+    const k = 2 + q;
+    const factor = clustered ? (24 / 23) * ((n - 1) / (n - k)) : n / (n - k);
+
+    // two-step efficient estimate on the instruments as they are
+    const A = hstack(W, Z);
+    const X = hstack(W, x);
+    const P = A.mmul(inverse(A.transpose().mmul(A))).mmul(A.transpose());
+    const Xh = P.mmul(X);
+    const b = inverse(Xh.transpose().mmul(X)).mmul(Xh.transpose().mmul(y));
+    const u = Matrix.sub(y, X.mmul(b));
+    const S = inverse(meat(rowsTimes(A, u), clustered));
+    const AX = A.transpose().mmul(X);
+    const b2 = inverse(AX.transpose().mmul(S).mmul(AX)).mmul(AX.transpose().mmul(S).mmul(A.transpose().mmul(y)));
+    const g = A.transpose().mmul(Matrix.sub(y, X.mmul(b2)));
+    near(fit.diagnostics.hansen_j?.stat ?? NaN, g.transpose().mmul(S).mmul(g).get(0, 0), 1e-8);
+    expect(fit.diagnostics.hansen_j?.df).toBe(q - 1);
+
+    // x̃'P x̃ over the trace of W₂ in the metric of the instruments
+    const v = residual(xt, Zt);
+    const ZZ = Zt.transpose().mmul(Zt);
+    const omega = Matrix.mul(meat(rowsTimes(Zt, v), clustered), factor);
+    const signal = form(ZZ, Zt.transpose().mmul(xt));
+    const F = signal / inverse(ZZ).mmul(omega).trace();
+    near(fit.diagnostics.effective_F?.F ?? NaN, F, 1e-8);
+
+    // Wald test of the instruments in a regression of y on them
+    const e = residual(yt, Zt);
+    const omegaY = Matrix.mul(meat(rowsTimes(Zt, e), clustered), factor);
+    near(fit.diagnostics.anderson_rubin?.zero.F ?? NaN, form(omegaY, Zt.transpose().mmul(yt)) / q, 1e-8);
+    expect(fit.diagnostics.anderson_rubin?.zero.df2).toBe(clustered ? 23 : n - k);
+  });
+});
+
+function hstack(...parts: Matrix[]): Matrix {
+  const out = Matrix.zeros(
+    parts[0].rows,
+    parts.reduce((sum, part) => sum + part.columns, 0),
+  );
+  let at = 0;
+  for (const part of parts) {
+    out.setSubMatrix(part, 0, at);
+    at += part.columns;
+  }
+  return out;
+}

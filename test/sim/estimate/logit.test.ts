@@ -1,3 +1,4 @@
+import fc from 'fast-check';
 import { describe, expect, test } from 'vitest';
 import type { Sample } from '../../../sim/estimate/fit.js';
 import { logit } from '../../../sim/estimate/logit.js';
@@ -119,6 +120,25 @@ describe('separation', () => {
   test('a combination of terms', () => {
     const y = column('y', n, (i) => (x.values[i] + noise.values[i] > 0 ? 1 : 0));
     expect(() => logit(sample(y, [x, noise]))).toThrow(/x, noise predict the outcome/);
+  });
+
+  test('two dummies and a table of counts: separated exactly when an empty cell says so, else the closed form', () => {
+    const count = fc.integer({ min: 0, max: 6 });
+    fc.assert(
+      fc.property(fc.tuple(count, count, count, count), ([a, b, c, d]) => {
+        // rows of (x, y): a of (0,0), b of (0,1), c of (1,0), d of (1,1)
+        fc.pre(a + b > 0 && c + d > 0 && a + c > 0 && b + d > 0 && a + b + c + d > 2);
+        const cells = [a, b, c, d].flatMap((times, cell) => new Array<number>(times).fill(cell));
+        const x = column('x', cells.length, (i) => cells[i] >> 1);
+        const y = column('y', cells.length, (i) => cells[i] & 1);
+        if (a * b * c * d === 0) expect(() => logit(sample(y, [x]))).toThrow(/x predicts the outcome y without error/);
+        else {
+          const fit = logit(sample(y, [x]));
+          near(fit.terms[1].estimate, Math.log((a * d) / (b * c)), 1e-8);
+          near(fit.terms[1].std_error, Math.sqrt(1 / a + 1 / b + 1 / c + 1 / d), 1e-8);
+        }
+      }),
+    );
   });
 
   test('an outcome that is not 0 or 1 is refused', () => {
