@@ -186,7 +186,22 @@ export class PocketTracker {
   }
 }
 
-/** The permutations a rule asks for, over everyone or within places. */
+/** Entries of permutations that a test of pockets may take a generation. */
+const MOST_ENTRIES = 20_000_000;
+/** Fewest permutations with which p ≤ 0.05 can still be told (1/40 is the smallest p). */
+const FEWEST = 39;
+
+/**
+ * Permutations used for n households: what the rule asks for up to 100,000 households at 199, fewer beyond, so that
+ * the test stays within about the time of a generation. A p-value from R permutations has standard error
+ * √(p (1 − p) / R): at a million households R is 39, and 0.05 is known to ± 0.035.
+ */
+export function permutationsFor(n: number, asked: number): number {
+  return Math.min(asked, Math.max(FEWEST, Math.floor(MOST_ENTRIES / n)));
+}
+
+/** The permutations a rule asks for (see `permutationsFor`), over everyone or within places. */
 export function pocketPlan(rule: PocketRule, place: Uint32Array, uniform: Uniform): PermutationPlan {
-  return new PermutationPlan(place.length, rule.permutations, uniform, rule.null === 'place' ? place : null);
+  const n = place.length;
+  return new PermutationPlan(n, permutationsFor(n, rule.permutations), uniform, rule.null === 'place' ? place : null);
 }

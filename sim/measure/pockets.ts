@@ -14,7 +14,7 @@ export interface PocketRule {
   readonly coreShare: number;
   /** Core households in a pocket, at least. */
   readonly minSize: number;
-  /** Permutations of the test. */
+  /** Permutations of the test; fewer are used above 100,000 households (see `permutationsFor`). */
   readonly permutations: number;
   /** Who trades statuses in the test: everyone, or households of the same place. */
   readonly null: 'everyone' | 'place';
