@@ -67,7 +67,11 @@ export function pairedContrast(arm: ArrayLike<number>, baseline: ArrayLike<numbe
  * @param halfWidth - wanted precision, in the unit of the indicator, above 0
  * @returns smallest R ≥ 2 with t(R − 1) · sd/√R ≤ halfWidth; NaN when the spread is unknown
  */
-export function replicatesNeeded(contrast: Contrast, halfWidth: number, level = 0.95): number {
+export function replicatesNeeded(
+  contrast: Pick<Contrast, 'mcSe' | 'replicates'>,
+  halfWidth: number,
+  level = 0.95,
+): number {
   if (!(halfWidth > 0)) throw new RangeError(`halfWidth must be above 0, got ${halfWidth}`);
   const sd = contrast.mcSe * Math.sqrt(contrast.replicates);
   if (Number.isNaN(sd)) return NaN;

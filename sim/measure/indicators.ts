@@ -15,6 +15,7 @@ import { dipPValue, dip as hartigansDip } from './dip.js';
 import { duclosEstebanRay } from './duclos-esteban-ray.js';
 import { type RatioMeasures, ratioMeasures, theilTBetween } from './entropy.js';
 import { estebanRayOfClasses } from './esteban-ray.js';
+import type { Fates } from './fates.js';
 import { meanAspirationGap, shareFrustrated } from './frustration.js';
 import { gini } from './gini.js';
 import { lorenz } from './lorenz.js';
@@ -26,7 +27,7 @@ import { quantileOfSorted } from './quantile.js';
 import { type Sample, sampleOf } from './sample.js';
 import { variance } from './spread.js';
 import { type TieFacts, tieFacts } from './tie-facts.js';
-import { joinCountNull, moranNull } from './tie-null.js';
+import { joinCountNull, moranNull, NORMAL_FROM } from './tie-null.js';
 import { wolfson } from './wolfson.js';
 
 /** What one generation of one arm is measured from. Arrays are read, never kept or changed. */
@@ -68,6 +69,8 @@ export interface IndicatorInput {
   readonly pockets?: PocketCensus | null | undefined;
   /** Causes of frustration, from `causesOf`; null or left out where they were not worked out. */
   readonly causes?: Causes | null | undefined;
+  /** What became of last generation's pockets and frustrated households; left out where there is no decision. */
+  readonly fates?: Fates | null | undefined;
 }
 
 /** A generation with the pieces that several indicators share, each made when first asked for. */
@@ -186,7 +189,7 @@ export class IndicatorContext {
 }
 
 /** What an indicator cannot do without; its cell is empty where that is missing. */
-export type Need = 'wealth' | 'decision' | 'parent' | 'ties' | 'pockets' | 'causes';
+export type Need = 'wealth' | 'decision' | 'parent' | 'ties' | 'pockets' | 'causes' | 'fates';
 
 /** One column of `indicators.csv`. */
 export interface Indicator {
@@ -460,12 +463,14 @@ export const INDICATORS: readonly Indicator[] = [
   },
   {
     name: 'join_count_p',
-    meaning: 'Permutation p-value of as many ties between frustrated households or more',
+    meaning:
+      'Permutation p-value of as many ties between frustrated households or more (normal approximation from 50,000)',
     formula: '(1 + permutations with at least as many) / (1 + permutations)',
     source: 'Cliff and Ord 1981',
     unit: 'probability',
     needs: ['decision', 'ties'],
-    of: (c) => joinCountNull(c.ties.list, decisionOf(c).frustrated, c.ties.plan).p,
+    of: (c) =>
+      c.ties.list.tied >= NORMAL_FROM ? c.joins.p : joinCountNull(c.ties.list, decisionOf(c).frustrated, c.ties.plan).p,
   },
   {
     name: 'moran',
@@ -487,12 +492,13 @@ export const INDICATORS: readonly Indicator[] = [
   },
   {
     name: 'moran_p',
-    meaning: 'Two-sided permutation p-value of Moran’s I',
+    meaning: 'Two-sided permutation p-value of Moran’s I (normal approximation from 50,000 households with ties)',
     formula: '(1 + permutations as far from the expectation) / (1 + permutations)',
     source: 'Cliff and Ord 1981',
     unit: 'probability',
     needs: ['wealth', 'ties'],
-    of: (c) => moranNull(c.ties.list, c.logWealth, c.moran.i, c.ties.plan).p,
+    of: (c) =>
+      c.ties.list.tied >= NORMAL_FROM ? c.moran.pRandom : moranNull(c.ties.list, c.logWealth, c.moran.i, c.ties.plan).p,
   },
   {
     name: 'assortativity_wealth',
@@ -641,6 +647,33 @@ export const INDICATORS: readonly Indicator[] = [
     of: (c) => pocketsOf(c).significant,
   },
   {
+    name: 'pocket_persistence',
+    meaning: 'Of the households that were core members of a pocket a generation ago, the share that is frustrated',
+    formula: 'mean of frustrated over last generation’s core members of pockets',
+    source: 'this project',
+    unit: 'share',
+    needs: ['decision', 'fates'],
+    of: (c) => fatesOf(c).pocketPersistence,
+  },
+  {
+    name: 'frustration_persistence',
+    meaning: 'Of the households that were frustrated a generation ago, the share that is frustrated',
+    formula: 'mean of frustrated over last generation’s frustrated households',
+    source: 'this project',
+    unit: 'share',
+    needs: ['decision', 'fates'],
+    of: (c) => fatesOf(c).frustrationPersistence,
+  },
+  {
+    name: 'pocket_satisfied_elsewhere',
+    meaning: 'Of the core members of pockets, the share that is satisfied in the other arm at the same time',
+    formula: 'mean of 1 − contrast_frustrated over core members of pockets',
+    source: 'this project',
+    unit: 'share',
+    needs: ['decision', 'fates'],
+    of: (c) => fatesOf(c).satisfiedElsewhere,
+  },
+  {
     name: 'local_share',
     meaning:
       'Share of households that are frustrated by their own reference and would meet a milestone under the society-wide mean',
@@ -676,6 +709,11 @@ function pocketsOf({ input }: IndicatorContext): PocketCensus {
   return input.pockets;
 }
 
+function fatesOf({ input }: IndicatorContext): Fates {
+  if (!input.fates) throw new Error('this indicator needs the fates of frustrated households');
+  return input.fates;
+}
+
 function causesOfContext({ input }: IndicatorContext): Causes {
   if (!input.causes) throw new Error('this indicator needs the causes of frustration');
   return input.causes;
@@ -709,7 +747,8 @@ export function indicatorRow(context: IndicatorContext): Float64Array {
       (input.decision === null && needs.includes('decision')) ||
       (input.parent === null && needs.includes('parent')) ||
       (!input.pockets && needs.includes('pockets')) ||
-      (!input.causes && needs.includes('causes'));
+      (!input.causes && needs.includes('causes')) ||
+      (!input.fates && needs.includes('fates'));
     row[k] = missing ? NaN : of(context);
   }
   return row;

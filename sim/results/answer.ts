@@ -4,9 +4,11 @@
  * The question in a sentence; each arm's segregation, frustration, inequality and growth; the paired difference
  * with its interval; the same in plain words. Text only: the report draws its figures from the same cube.
  */
+import { replicatesNeeded } from '../measure/contrast.js';
 import type { Study } from '../study/complete.js';
 import { type ContrastRow, contrastRow } from './contrasts.js';
 import type { IndicatorCube } from './cube.js';
+import type { PocketLives } from './pocket-lives.js';
 
 /** One line of the answer table: a label and a cell for each arm. */
 export interface AnswerLine {
@@ -49,8 +51,8 @@ function decimals(x: number, digits: number): string {
   return Number.isNaN(x) ? '–' : x.toFixed(digits).replace('-', '−');
 }
 
-/** Gathers the answer of a finished study. */
-export function answerOf(study: Study, cube: IndicatorCube): Answer {
+/** Gathers the answer of a finished study. @param lives - of the pockets in each arm, in the order of the arms */
+export function answerOf(study: Study, cube: IndicatorCube, lives: readonly PocketLives[] = []): Answer {
   const last = cube.generations - 1;
   const decided = last - 1;
   const middle = Math.floor(decided / 2);
@@ -78,7 +80,11 @@ export function answerOf(study: Study, cube: IndicatorCube): Answer {
       return `${percent(growth - 1)} (${percent(growth ** (1 / study.years_per_generation) - 1)} a year)`;
     }),
   );
-  add('pockets', `pockets, generation ${middle}`, middle, (x) => decimals(x, 1));
+  const peak = peakOfPockets(cube);
+  if (peak !== null) {
+    add('significant_pockets', `pockets beyond chance, generation ${peak}`, peak, (x) => decimals(x, 1));
+    add('pocket_share', `households in pockets, generation ${peak}`, peak, percent);
+  }
 
   const contrasts: ContrastRow[] = [];
   const words: string[] = [];
@@ -95,6 +101,9 @@ export function answerOf(study: Study, cube: IndicatorCube): Answer {
     }
   }
   if (arms.length === 1) words.push(levelSentence(cube, decided));
+  lives.forEach((life, a) => words.push(...pocketSentences(life, arms[a]!, cube, a, arms)));
+  const wanted = contrasts.find((row) => row.replicates > 1);
+  if (wanted !== undefined) words.push(precisionSentence(wanted));
   const groups = study.population.places?.count;
   const households = study.population.households;
   return {
@@ -200,6 +209,82 @@ function interval(row: ContrastRow): string {
   const [low, high] = flip ? [-row.ci_high, -row.ci_low] : [row.ci_low, row.ci_high];
   const end = (x: number): string => `${x < 0 ? '−' : ''}${points(x)}`;
   return `95 % interval ${end(low)} to ${end(high)}`;
+}
+
+/** The generation with most pockets beyond chance, over all arms; null when there is none. */
+function peakOfPockets(cube: IndicatorCube): number | null {
+  let best: number | null = null;
+  let most = 0;
+  for (let generation = 0; generation < cube.generations; generation++) {
+    for (let a = 0; a < cube.arms.length; a++) {
+      const mean = cube.mean('significant_pockets', a, generation);
+      if (mean > most) {
+        most = mean;
+        best = generation;
+      }
+    }
+  }
+  return best;
+}
+
+/** Where pockets arose in one arm, how large they were, how long they lasted, why, and what became of members. */
+function pocketSentences(
+  life: PocketLives,
+  arm: string,
+  cube: IndicatorCube,
+  a: number,
+  arms: readonly string[],
+): string[] {
+  if (life.pockets === 0) return [`'${arm}' has no pocket of frustration in any replicate.`];
+  if (life.significant === 0) {
+    return [
+      `'${arm}' has ${life.pockets} pockets over all replicates, none larger than chance would make (every p above 0.05).`,
+    ];
+  }
+  const words = [
+    `'${arm}' has ${decimals(life.significantPerReplicate, 1)} pockets beyond chance a replicate, the first in generation ` +
+      `${life.firstGeneration}, most in generation ${life.peakGeneration}: ${whole(life.medianSize)} core households in the ` +
+      `middle case, ${life.medianPlaces === 1 ? 'within one place' : `over ${whole(life.medianPlaces)} places`}, lasting ` +
+      `${decimals(life.meanLife, 1)} ${life.meanLife === 1 ? 'generation' : 'generations'} on average.`,
+  ];
+  const persistence = overAll(cube, 'pocket_persistence', a);
+  const others = overAll(cube, 'frustration_persistence', a);
+  const elsewhere = overAll(cube, 'pocket_satisfied_elsewhere', a);
+  words.push(
+    `Of their core members ${percent(life.localShare)} would meet a milestone if they looked at everyone alike (a local cause)` +
+      `${Number.isNaN(persistence) ? '' : `; ${percent(persistence)} are still frustrated a generation later (${percent(others)} of all the frustrated)`}` +
+      `${Number.isNaN(elsewhere) ? '' : `; ${percent(elsewhere)} are satisfied at the same time in '${arms[a === 0 ? 1 : 0]}'`}.`,
+  );
+  return words;
+}
+
+/** Mean over generations and replicates that have a value. */
+function overAll(cube: IndicatorCube, name: string, arm: number): number {
+  let sum = 0;
+  let count = 0;
+  for (let generation = 0; generation < cube.generations; generation++) {
+    for (const x of cube.over(name, arm, generation)) {
+      if (Number.isNaN(x)) continue;
+      sum += x;
+      count++;
+    }
+  }
+  return count > 0 ? sum / count : NaN;
+}
+
+function whole(x: number): string {
+  return String(Math.round(x));
+}
+
+/** How many replicates a tighter interval would take. */
+function precisionSentence(row: ContrastRow): string {
+  const half = (row.ci_high - row.ci_low) / 2;
+  const target = half > 0.01 ? 0.01 : half / 2;
+  const needed = replicatesNeeded({ mcSe: row.mc_se, replicates: row.replicates }, target);
+  return (
+    `The difference in generation ${row.generation} has a Monte Carlo standard error of ${(100 * row.mc_se).toFixed(2)} points; ` +
+    `an interval of ±${(100 * target).toFixed(target < 0.01 ? 2 : 0)} ${target === 0.01 ? 'point' : 'points'} would take about ${grouped(needed)} replicates.`
+  );
 }
 
 function levelSentence(cube: IndicatorCube, decided: number): string {

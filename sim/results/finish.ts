@@ -14,9 +14,10 @@ import type { Row } from './field.js';
 import { FIFTHS } from './measured.js';
 import { partName } from './parts.js';
 import { decodePlane } from './plane.js';
+import { type PocketLives, type PocketStepRow, pocketLives } from './pocket-lives.js';
 import { CsvReader } from './read-csv.js';
 import { readAll, type Store } from './store.js';
-import type { TableName } from './tables.js';
+import { type TableName, tableNamed, tablesOf } from './tables.js';
 
 /** Tables computed at the end, and what the run wants on record. */
 export interface Finished {
@@ -34,7 +35,7 @@ export function finishTables(store: Store, facts: Facts, study: Study): Finished
       { name: 'incidence', rows: incidenceRows(store, study) },
       { name: 'transitions', rows: transitionRows(store, study) },
     ],
-    answer: answerOf(study, cube),
+    answer: answerOf(study, cube, livesOf(store, facts, study)),
     notes: { networks: networkNotes(store, study) },
   };
 }
@@ -63,6 +64,43 @@ function cubeOfParts(store: Store, facts: Facts, study: Study): IndicatorCube {
     }
   }
   return cube;
+}
+
+/** The pockets of each arm. */
+function livesOf(store: Store, facts: Facts, study: Study): PocketLives[] {
+  const fields = tableNamed(tablesOf(facts), 'pockets').fields.map((field) => field.name);
+  const at = (name: string): number => fields.indexOf(name);
+  const [generation, pocket, size, places, p, local, general] = [
+    'generation',
+    'pocket',
+    'size',
+    'places',
+    'p_value',
+    'local',
+    'general',
+  ].map(at) as [number, number, number, number, number, number, number];
+  const decoder = new TextDecoder();
+  return study.arms.map((_, a) => {
+    const rows: PocketStepRow[] = [];
+    for (let r = 0; r < study.replicates; r++) {
+      const reader = new CsvReader((cells) => {
+        const value = (k: number): number => (cells[k] === '' ? NaN : Number(cells[k]));
+        rows.push({
+          replicate: r,
+          generation: value(generation),
+          pocket: value(pocket),
+          size: value(size),
+          places: value(places),
+          pValue: value(p),
+          local: value(local),
+          general: value(general),
+        });
+      });
+      reader.push(decoder.decode(readAll(store, partName(r, a, 'pockets.csv'))!));
+      reader.end();
+    }
+    return pocketLives(rows, study.replicates);
+  });
 }
 
 /** Mean and Monte Carlo standard error over replicates, those without a value left out. */

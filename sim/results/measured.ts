@@ -7,6 +7,7 @@
 import { localMoran } from '../../network/measure/local-moran.js';
 import { localPermutation } from '../../network/measure/local-permutation.js';
 import { CAUSES, type Causes, causesOf } from '../measure/cause.js';
+import { fatesOf, type Statuses } from '../measure/fates.js';
 import { frustrationRows } from '../measure/frustration.js';
 import { growthByInitialRank, growthIncidence } from '../measure/incidence.js';
 import { INDICATORS, IndicatorContext, indicatorRow } from '../measure/indicators.js';
@@ -14,6 +15,7 @@ import { averageRanks, rankBins } from '../measure/order.js';
 import type { PermutationPlan } from '../measure/permutations.js';
 import { type PocketCensus, PocketTracker, pocketPlan } from '../measure/pocket-tracker.js';
 import { type PocketRule, ROLES } from '../measure/pockets.js';
+import { classifyRegime, observeRegime, type RegimeObservation, type RegimeVerdict } from '../measure/regime.js';
 import { type TieFacts, tieFacts } from '../measure/tie-facts.js';
 import { countPairs } from '../measure/transitions.js';
 import { stream } from '../random/stream.js';
@@ -27,6 +29,80 @@ import { keepsGeneration, keepsReplicate } from './thin.js';
 
 /** Fifths of transitions. */
 export const FIFTHS = 5;
+
+/** Columns of evidence beside a regime: where the classification rests, in the words of regime.ts. */
+const EVIDENCE: readonly (Entry & { readonly key: keyof RegimeVerdict })[] = (
+  [
+    ['from', 'window_from', 'First generation of the window looked at', 'last third of 0 … T', 'generation', 'integer'],
+    ['to', 'window_to', 'Last generation of the window looked at', 'T', 'generation', 'integer'],
+    [
+      'sdLogFrom',
+      'sd_log_from',
+      'Standard deviation of log wealth at the start of the window',
+      'sd of ln y',
+      '',
+      'number',
+    ],
+    ['sdLogTo', 'sd_log_to', 'Standard deviation of log wealth at its end', 'sd of ln y', '', 'number'],
+    [
+      'spreadTrend',
+      'spread_trend',
+      'Trend of that spread, relative to its mean',
+      'least-squares slope / mean',
+      'a generation',
+      'number',
+    ],
+    [
+      'levelTrend',
+      'level_trend',
+      'Trend of the median of log wealth',
+      'least-squares slope',
+      'log points a generation',
+      'number',
+    ],
+    [
+      'meanGrowth',
+      'mean_growth',
+      'Mean growth of mean wealth over the window',
+      'mean of mean y(t+1) / mean y(t)',
+      'gross factor per generation',
+      'number',
+    ],
+    [
+      'shareFrustrated',
+      'share_frustrated',
+      'Mean share frustrated over the window',
+      'mean of share_frustrated',
+      'share',
+      'number',
+    ],
+    ['modes', 'modes', 'Most common number of modes of the log-wealth density', 'mode of modes', 'count', 'integer'],
+    [
+      'period',
+      'period',
+      'Generations after which the distribution returns to itself',
+      'smallest period at which quantile profiles return',
+      'generations',
+      'integer',
+    ],
+    [
+      'distance',
+      'distance',
+      'Mean distance of quantile profiles one period, or one generation, apart',
+      'mean |ΔQ(p)| of ln y, p = 0.05 … 0.95',
+      'log points',
+      'number',
+    ],
+    [
+      'moreGenerations',
+      'more_generations',
+      'Undecided: about how many more generations would tell',
+      'steps carried on at their pace',
+      'generations',
+      'integer',
+    ],
+  ] as const
+).map(([key, name, meaning, formula, unit, type]) => ({ key, name, meaning, formula, unit, type, source: '' }));
 
 /** What the measures add to the tables of a study. */
 export function measureFacts(study: Study): Pick<Facts, 'extras' | 'indicators' | 'evidence'> {
@@ -44,7 +120,7 @@ export function measureFacts(study: Study): Pick<Facts, 'extras' | 'indicators' 
         unit: unit === 'wealth' ? study.currency : unit,
       }),
     ),
-    evidence: [],
+    evidence: EVIDENCE,
   };
 }
 
@@ -69,6 +145,8 @@ interface Carried {
   readonly tracker: PocketTracker;
   readonly incidence: number[];
   readonly transitions: number[];
+  readonly regime: RegimeObservation[];
+  statuses: Statuses | null;
   tieFacts: TieFacts | null;
   /** Fifth of each household in generation 0. */
   firstFifth: ArrayLike<number> | null;
@@ -106,6 +184,8 @@ export class Measured {
       tracker: new PocketTracker(rule, this.plan),
       incidence: [],
       transitions: [],
+      regime: [],
+      statuses: null,
       tieFacts: null,
       firstFifth: null,
       parentFifth: null,
@@ -139,6 +219,8 @@ export class Measured {
           cause: causes?.cause,
         })
       : null;
+    const statuses = pockets === null ? null : { frustrated, role: pockets.role };
+    const other = this.otherOf(arm.record.armIndex);
     const context = new IndicatorContext({
       wealth: columns.wealth,
       place: households.place,
@@ -158,13 +240,19 @@ export class Measured {
       },
       pockets,
       causes,
+      fates: statuses === null ? null : fatesOf(statuses, arm.statuses, other?.[generation] ?? null),
     });
+    arm.statuses = statuses;
     const row: Record<string, number> = { generation };
     indicatorRow(context).forEach((value, k) => {
       row[INDICATORS[k]!.name] = value;
     });
     this.writer.rows('indicators', [row]);
     this.mobility(record, context);
+    const decision = record.decided
+      ? { shareFrustrated: row.share_frustrated!, meanGrowth: mean(columns.childWealth) / mean(columns.wealth) }
+      : null;
+    arm.regime.push(observeRegime(context, decision));
     if (pockets !== null) this.pocketTable(generation, pockets);
     if (record.decided) this.frustrationTable(record, frustrated, context.rank);
     this.writer.generation(record, this.extras(record, pockets, causes, context));
@@ -172,6 +260,9 @@ export class Measured {
 
   armEnds(): void {
     const arm = this.arm!;
+    const verdict = classifyRegime(arm.regime);
+    const evidence = Object.fromEntries(EVIDENCE.map(({ key, name }) => [name, verdict[key]]));
+    this.writer.rows('regimes', [{ regime: verdict.regime, ...evidence }]);
     this.writer.keep('incidence', encodePlane(arm.incidence));
     this.writer.keep('transitions', encodePlane(arm.transitions));
     this.writer.armEnds();
@@ -267,6 +358,12 @@ export class Measured {
       local_moran_p: localPermutation(record.ties, context.logWealth, rule.permutations, uniform).p,
     };
   }
+}
+
+function mean(x: Float64Array): number {
+  let sum = 0;
+  for (let i = 0; i < x.length; i++) sum += x[i];
+  return sum / x.length;
 }
 
 /** Codes 0 = empty, 1 … as codes from 0 with the empty ones past the names. */

@@ -13,7 +13,6 @@ import { BETWEENNESS_LIMIT, covariateFacts, type Facts } from './facts.js';
 import { Measured, measureFacts, type OtherArm } from './measured.js';
 import { PartWriter } from './parts.js';
 import type { Store } from './store.js';
-import { keepsReplicate } from './thin.js';
 
 /** Number of households of a study. */
 export function householdsOf(prepared: Prepared): number {
@@ -64,10 +63,7 @@ export function runReplicate(
     replicate,
   });
   const networks = new Map<string, ArmNetwork>();
-  const others =
-    facts.extras.includes('contrast_frustrated') && keepsReplicate(study.keep.panel, replicate)
-      ? firstArms(prepared, replicate, networks)
-      : [];
+  const others = study.arms.length > 1 ? firstArms(prepared, replicate, networks) : [];
   // the first arm is compared with the second, every other one with the first
   const measured = new Measured(study, writer, (arm) => others[arm === 0 ? 1 : 0] ?? null);
   const recorder: Recorder = {
