@@ -5,7 +5,8 @@
  * in the place; bound ends are matched among themselves, the rest with anyone. The bound shares are Coleman's inbreeding
  * form of the shares asked for, (share − chance) / (1 − chance), since free ends stay at home by chance too. Loops and
  * second ties that the matching leaves are swapped away within the same pool (degrees stay); ends that no swap can
- * place, as in a pool with fewer members than one of them has ends, are matched more widely.
+ * place, as in a pool with fewer members than one of them has ends, are matched more widely. With degrees that differ
+ * much in small groups the same-group share therefore falls a little short (`reached` tells by how much).
  */
 import { InputError } from '../errors.js';
 import type { Labels, Ties, Uniform } from '../graph.js';
@@ -15,7 +16,7 @@ import { cells, shuffle } from './order.js';
 import { checkMeanDegree, checkShare, infeasible } from './refuse.js';
 import type { ConfigurationSpec } from './spec.js';
 
-/** Swaps tried for one bad tie within its pool, then among all ties. */
+/** Swaps tried for one bad tie within its pool, and again within its place; among all ties, 20 times as many. */
 const TRIES = 200;
 
 /**
@@ -110,19 +111,22 @@ function match(degree: Uint32Array, spec: ConfigurationSpec, labels: Labels, uni
 
   const source = new Uint32Array(total / 2);
   const target = new Uint32Array(total / 2);
-  // pool of each tie: ties of a pool stand together, [poolStart[p], poolStart[p+1])
-  const poolStart: number[] = [0];
+  // ties of a pool stand together, and the pools of a place
+  const pools: Pool[] = [];
   let m = 0;
   const free: number[] = [];
   const pair = (ends: Uint32Array): void => {
+    const from = m;
     shuffle(ends, uniform);
     for (let at = 0; at + 1 < ends.length; at += 2) {
       source[m] = ends[at];
       target[m++] = ends[at + 1];
     }
-    poolStart.push(m);
+    pools.push({ from, to: m, placeFrom: from, placeTo: m });
   };
   for (let p = 0; p < places; p++) {
+    const firstPool = pools.length;
+    const placeFrom = m;
     const inPlace: number[] = [];
     for (let c = placeCells[p]; c < placeCells[p + 1]; c++) {
       const inGroup: number[] = [];
@@ -148,10 +152,11 @@ function match(degree: Uint32Array, spec: ConfigurationSpec, labels: Labels, uni
     }
     if (inPlace.length % 2 === 1) free.push(inPlace.splice(Math.floor(uniform() * inPlace.length), 1)[0]);
     pair(Uint32Array.from(inPlace));
+    for (let pool = firstPool; pool < pools.length; pool++) pools[pool] = { ...pools[pool], placeFrom, placeTo: m };
   }
   pair(Uint32Array.from(free));
   const slots = new TieSlots(n, source, target);
-  repair(slots, Uint32Array.from(poolStart), uniform);
+  repair(slots, pools, uniform);
   return slots.toTies(null);
 }
 
@@ -203,15 +208,24 @@ function boundShares(
   }
 }
 
-/** Swaps loops and second ties away, within the pool first, then among all ties. */
-function repair(slots: TieSlots, poolStart: Uint32Array, uniform: Uniform): void {
+/** Ties [from, to) were matched among themselves; [placeFrom, placeTo) are all ties matched inside the same place. */
+interface Pool {
+  readonly from: number;
+  readonly to: number;
+  readonly placeFrom: number;
+  readonly placeTo: number;
+}
+
+/** Swaps loops and second ties away: within the pool first, then within the place, then among all ties. */
+function repair(slots: TieSlots, pools: readonly Pool[], uniform: Uniform): void {
   const m = slots.source.length;
   const bad = (e: number): boolean =>
     slots.source[e] === slots.target[e] || slots.joined(slots.source[e], slots.target[e], 2) > 1;
-  for (let p = 0; p + 1 < poolStart.length; p++) {
-    for (let e = poolStart[p]; e < poolStart[p + 1]; e++) {
+  for (const { from, to, placeFrom, placeTo } of pools) {
+    for (let e = from; e < to; e++) {
       if (!bad(e)) continue;
-      if (!mend(slots, e, poolStart[p], poolStart[p + 1], TRIES, uniform)) mend(slots, e, 0, m, 20 * TRIES, uniform);
+      if (mend(slots, e, from, to, TRIES, uniform)) continue;
+      if (!mend(slots, e, placeFrom, placeTo, TRIES, uniform)) mend(slots, e, 0, m, 20 * TRIES, uniform);
     }
   }
   // what is left stands in a network so dense that a random partner almost never fits: look at every tie

@@ -15,8 +15,11 @@ import type { SpatialSpec } from './spec.js';
 
 /** On one spot, households still differ by up to this much, so that "nearest" is decided by chance. */
 const SPOT = 1e-4;
-/** Households whose surroundings are counted when the radius is sought. */
+/** Households whose surroundings are measured when the radius is sought, and the most distances kept for that. */
 const SAMPLE = 2000;
+const DISTANCES = 2_000_000;
+/** The sample errs by about a hundredth; a radius this much too generous is sure to hold the wanted pairs. */
+const MARGIN = 1.12;
 
 /**
  * @param spec - `mean_degree` in 0 … n−1; `spread` in 0 … 1
@@ -107,7 +110,7 @@ class Grid {
     this.x = x;
     this.y = y;
     // at least 3 columns, so that the nine cells round a household are nine different ones
-    this.columns = Math.max(3, Math.min(Math.floor(1 / cell), 2 ** 25));
+    this.columns = Math.max(3, Math.min(Math.floor(1 / cell), 33_554_432));
     let buckets = 16;
     while (buckets < n) buckets *= 2;
     this.mask = buckets - 1;
@@ -175,26 +178,24 @@ function firstRadius(
   const { places } = cells({ ...labels, group: new Uint32Array(n) });
   const scale = Math.max(spec.spread, SPOT);
   const density = Math.max(n, n / (places * scale * scale));
-  let radius = Math.min(0.5, Math.sqrt(degree / (Math.PI * density)));
+  let radius = Math.min(0.5, 1.5 * Math.sqrt(degree / (Math.PI * density)));
   const sampled = Math.min(n, SAMPLE);
-  // counts grow like the square of the radius while the density is even; a few rounds correct for uneven places
-  for (let round = 0; round < 12; round++) {
+  for (;;) {
     const grid = new Grid(x, y, radius);
-    let count = 0;
-    for (let s = 0; s < sampled; s++) {
-      const i = sampled === n ? s : Math.floor(uniform() * n);
-      grid.around(i, radius, () => {
-        count++;
+    const squared: number[] = [];
+    let looked = 0;
+    while (looked < sampled && squared.length < DISTANCES) {
+      const i = sampled === n ? looked : Math.floor(uniform() * n);
+      grid.around(i, radius, (_j, d) => {
+        squared.push(d);
       });
+      looked++;
     }
-    const found = count / sampled;
-    if (found >= degree && found <= 1.3 * degree) return radius;
-    const factor = found > 0 ? Math.sqrt((1.12 * degree) / found) : 2;
-    const next = Math.min(0.5, radius * Math.min(Math.max(factor, 0.5), 2));
-    if (next === radius) return radius;
-    radius = next;
+    const needed = Math.ceil(MARGIN * degree * looked);
+    if (squared.length > needed) return Math.sqrt(Float64Array.from(squared).sort()[needed]);
+    if (radius >= 0.5) return radius;
+    radius = Math.min(0.5, 2 * radius);
   }
-  return radius;
 }
 
 /** Every pair within `radius`, or null when there are more than `most`. */
