@@ -4,13 +4,12 @@
  */
 
 import { InputError } from '../../network/errors.js';
+import type { ERROR_KINDS, METHODS } from '../study/estimates.js';
 import { twoSidedCritical, twoSidedP } from './distributions.js';
 import type { Groups } from './groups.js';
 
-export const METHODS = ['ols', 'logit', 'iv'] as const;
 export type Method = (typeof METHODS)[number];
 
-export const ERROR_KINDS = ['classical', 'robust', 'robust-hc3', 'clustered'] as const;
 export type ErrorKind = (typeof ERROR_KINDS)[number];
 
 /** A column with the name it has in the results. */

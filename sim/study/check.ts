@@ -5,6 +5,7 @@
  * Reads the parsed study only; the files it names are read by inputs.ts.
  */
 import { nearest } from '../../network/errors.js';
+import { checkEstimates } from './estimates.js';
 import { type Path, pathText, type StudyProblem } from './problems.js';
 import type { ArmFile, PartialPreferencesFile, PreferencesFile, StudyFile, WealthFile } from './schema.js';
 
@@ -26,6 +27,20 @@ export function checkStudy(study: StudyFile): StudyProblem[] {
   const { formats } = study.keep;
   if (new Set(formats).size < formats.length) {
     found.push(problem('duplicate', ['keep', 'formats'], 'keep.formats names a format twice', 'name each once'));
+  }
+  if (study.estimates !== undefined) {
+    found.push(...checkEstimates(study.estimates));
+    if (study.keep.panel === 'none') {
+      found.push(
+        problem(
+          'no-panel',
+          ['estimates'],
+          'estimates need a panel and keep.panel is none',
+          'use keep: {panel: all}',
+          true,
+        ),
+      );
+    }
   }
   return found;
 }

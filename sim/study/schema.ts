@@ -7,11 +7,14 @@
  * positions in errors are parse.ts.
  */
 import { z } from 'zod';
+import { Estimates } from './estimates.js';
 
 /** What the study sheet shows beside a field. */
 interface Note {
   readonly title: string;
   readonly usual?: string;
+  /** True for what the sheet leaves to the text beside it. */
+  readonly textOnly?: boolean;
   readonly [key: string]: unknown;
 }
 
@@ -510,6 +513,11 @@ export const StudyFile = z.strictObject({
   arms: note(z.array(Arm).min(1).max(50), 'Arms', 'The networks compared, on the same households and the same luck.'),
   pockets: note(Pockets, 'Pockets', 'What counts as a local aspiration trap, and how it is tested.').prefault({}),
   keep: note(Keep, 'Keep', 'What is written.').prefault({}),
+  estimates: Estimates.optional().meta({
+    title: 'Estimates',
+    description: 'Regressions run on the panel after the study.',
+    textOnly: true,
+  } satisfies Note & { description: string }),
 });
 
 export type StudyFile = z.output<typeof StudyFile>;

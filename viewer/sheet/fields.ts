@@ -150,7 +150,7 @@ export function fieldOf(schema: z.ZodType, key = ''): Field {
         kind: 'group',
         // a key with one allowed word marks a variant and is no field of its own
         fields: Object.entries(def.shape ?? {})
-          .filter(([, inner]) => definition(inner).type !== 'literal')
+          .filter(([, inner]) => definition(inner).type !== 'literal' && inner.meta()?.textOnly !== true)
           .map(([name, inner]) => fieldOf(inner, name)),
       };
     case 'union': {
