@@ -1,16 +1,14 @@
 /**
- * The panel as CSV, for a study that kept it as Parquet: the same columns and the same numbers, read group by group.
+ * The panel as CSV, for a study that kept it as Parquet: the bytes the command line
+ * writes as CSV, read group by group.
  */
 
+import { numberCell, textCell } from '../../sim/results/csv.js';
 import { openTable, readRange } from './rows.js';
 import type { Source } from './source.js';
 
 /** Rows turned into text at a time. */
 const STEP = 20000;
-
-function cell(text: string): string {
-  return /[",\r\n]/.test(text) ? `"${text.replaceAll('"', '""')}"` : text;
-}
 
 /** @returns the file. Memory: the text of the panel, in pieces. */
 export async function panelCsv(source: Source): Promise<Blob> {
@@ -24,7 +22,7 @@ export async function panelCsv(source: Source): Promise<Blob> {
   });
   const columns = table.metadata.schema.slice(1);
   const texts = new Set(columns.filter((c) => c.type === 'BYTE_ARRAY').map((c) => c.name));
-  const pieces: string[] = [`${columns.map((c) => cell(c.name)).join(',')}\n`];
+  const pieces: string[] = [`${columns.map((c) => textCell(c.name)).join(',')}\r\n`];
   let from = 0;
   for (const group of table.metadata.row_groups) {
     const rows = Number(group.num_rows);
@@ -42,10 +40,10 @@ export async function panelCsv(source: Source): Promise<Blob> {
         for (let c = 0; c < list.length; c++) {
           const v = list[c];
           if (c > 0) out += ',';
-          if (v instanceof Float64Array) out += Number.isNaN(v[k]) ? '' : Object.is(v[k], -0) ? '-0' : String(v[k]);
-          else out += v.codes[k] < 0 ? '' : cell(v.names[v.codes[k]]);
+          if (v instanceof Float64Array) out += numberCell(v[k]);
+          else out += v.codes[k] < 0 ? '' : textCell(v.names[v.codes[k]]);
         }
-        out += '\n';
+        out += '\r\n';
       }
       pieces.push(out);
       // the page stays alive while a large panel is written

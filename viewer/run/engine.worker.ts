@@ -1,34 +1,52 @@
 /**
- * The engine in a worker of the page: reads a study, runs its replicates one after another, and hands over the same
- * files a run on disk would write. The first replicate is handed over as soon as it is there.
+ * The engine in a worker of the page: reads a study, runs the replicates it is given, and makes the same files out
+ * of them that a run on disk would write.
+ *
+ * Several such workers share a study's replicates (run.ts); each hands over the parts of a replicate when it is done.
  */
 import { InputError, type Problem } from '../../network/errors.js';
 import { bundle } from '../../sim/results/bundle.js';
 import { finishTables } from '../../sim/results/finish.js';
 import { canonicalText, factsOf, householdsOf, runReplicate } from '../../sim/results/run-replicate.js';
-import { type MemoryStore, memoryStore, writeAll } from '../../sim/results/store.js';
+import { memoryStore, writeAll } from '../../sim/results/store.js';
 import { loadInputs } from '../../sim/study/inputs.js';
 import { parseStudy, studyText } from '../../sim/study/parse.js';
 import { portable } from '../../sim/study/portable.js';
 import type { Prepared } from '../../sim/study/replicate.js';
 import { VERSION } from '../../sim/version.js';
+import { MOST_BYTES, memoryWords, needs } from './needs.js';
+
+/** Files by name. */
+export type Files = ReadonlyMap<string, Uint8Array<ArrayBuffer>>;
 
 /** What the page asks. */
-export interface EngineRequest {
-  readonly yaml: string;
-  readonly files: ReadonlyMap<string, Uint8Array>;
-}
+export type EngineRequest =
+  /** First: the study and the files it names. */
+  | { readonly kind: 'read'; readonly yaml: string; readonly files: ReadonlyMap<string, Uint8Array> }
+  | { readonly kind: 'run'; readonly replicate: number }
+  /** Makes the folder of the first `replicates` replicates out of their parts. */
+  | { readonly kind: 'assemble'; readonly parts: Files; readonly replicates: number; readonly seconds: number };
 
 /** What the worker says. */
 export type EngineReply =
-  | { readonly kind: 'progress'; readonly done: number; readonly doing: string }
   | {
-      readonly kind: 'first' | 'done';
-      readonly files: ReadonlyMap<string, Uint8Array<ArrayBuffer>>;
+      readonly kind: 'ready';
       readonly replicates: number;
+      /** Steps of a replicate: generations of an arm. */
+      readonly steps: number;
+      readonly households: number;
+      /** Bytes one replicate at work needs. */
+      readonly work: number;
     }
+  /** Steps done since the last such message. */
+  | { readonly kind: 'steps'; readonly steps: number }
+  | { readonly kind: 'ran'; readonly replicate: number; readonly parts: Files }
+  | { readonly kind: 'assembled'; readonly files: Files; readonly replicates: number }
   | { readonly kind: 'problems'; readonly problems: readonly Problem[] }
   | { readonly kind: 'failed'; readonly message: string };
+
+/** Milliseconds between two words on progress. */
+const TELL = 80;
 
 /** The worker's own scope, as far as it is used here. */
 const scope = self as unknown as {
@@ -36,83 +54,98 @@ const scope = self as unknown as {
   postMessage(message: EngineReply, transfer?: Transferable[]): void;
 };
 
+let prepared: Prepared | null = null;
+
 scope.onmessage = (event) => {
-  run(event.data).catch((error: unknown) => {
+  answer(event.data).catch((error: unknown) => {
     if (error instanceof InputError) scope.postMessage({ kind: 'problems', problems: error.problems });
     else scope.postMessage({ kind: 'failed', message: error instanceof Error ? error.message : String(error) });
   });
 };
 
-async function run({ yaml, files }: EngineRequest): Promise<void> {
-  const parsed = parseStudy(yaml, 'study');
-  const read = async (path: string): Promise<string | null> => {
-    const bytes = files.get(path) ?? files.get(path.split(/[\\/]/).at(-1) ?? path);
-    return bytes === undefined ? null : new TextDecoder().decode(bytes);
-  };
-  const prepared = portable({ study: parsed.study, inputs: await loadInputs(parsed, read) });
-  const { study } = prepared;
-  const facts = factsOf(prepared);
-  const store = memoryStore();
-  const steps = study.replicates * study.arms.length * study.generations;
-  const began = performance.now();
-  let done = 0;
-  let told = 0;
-  for (let r = 0; r < study.replicates; r++) {
-    runReplicate(prepared, facts, store, r, () => {
-      done++;
-      const now = performance.now();
-      if (now - told < 80) return;
-      told = now;
-      scope.postMessage({
-        kind: 'progress',
-        done: (0.97 * done) / steps,
-        doing: `replicate ${r + 1} of ${study.replicates}`,
-      });
-    });
-    if (r === 0 && study.replicates > 1) await hand('first', prepared, copyOf(store), 1, began);
-  }
-  scope.postMessage({ kind: 'progress', done: 0.97, doing: 'writing the tables' });
-  await hand('done', prepared, store, study.replicates, began);
+async function answer(request: EngineRequest): Promise<void> {
+  if (request.kind === 'read') return read(request.yaml, request.files);
+  if (prepared === null) throw new Error('no study was read');
+  return request.kind === 'run'
+    ? run(prepared, request.replicate)
+    : assembleParts(prepared, request.parts, request.replicates, request.seconds);
 }
 
-async function hand(
-  kind: 'first' | 'done',
-  prepared: Prepared,
-  store: MemoryStore,
-  replicates: number,
-  began: number,
-): Promise<void> {
-  const { study, inputs } = prepared;
-  const facts = factsOf(prepared);
-  const { tables, notes } = await finishTables(store, facts, { ...study, replicates });
-  const head = {
-    version: VERSION,
-    study: study.study,
-    studyHash: await hashed(canonicalText(prepared)),
-    seed: study.seed,
-    arms: study.arms.map((arm) => arm.name),
-    replicates,
-    generations: study.generations,
-    households: householdsOf(prepared),
-    started: new Date().toISOString(),
-  };
-  for (const [path, text] of Object.entries(inputs.texts)) writeAll(store, path, text);
-  const made = await bundle(store, {
-    head,
-    studyYaml: studyText(study),
+async function read(yaml: string, files: ReadonlyMap<string, Uint8Array>): Promise<void> {
+  const parsed = parseStudy(yaml, 'study');
+  const inputs = await loadInputs(parsed, async (path) => {
+    const bytes = files.get(path) ?? files.get(path.split(/[\\/]/).at(-1) ?? path);
+    return bytes === undefined ? null : new TextDecoder().decode(bytes);
+  });
+  prepared = portable({ study: parsed.study, inputs });
+  const { study } = prepared;
+  const households = householdsOf(prepared);
+  const needed = needs(study, households);
+  if (needed.bytes > MOST_BYTES) {
+    throw new InputError({
+      code: 'too-large',
+      place: parsed.place(['population']),
+      problem: `this study ${memoryWords(needed)}, more than a page can hold`,
+      remedy: 'keep a part of the panel (keep.panel), or run it by the command line and look at the results folder',
+    });
+  }
+  scope.postMessage({
+    kind: 'ready',
+    replicates: study.replicates,
+    steps: study.arms.length * study.generations,
+    households,
+    work: needed.work,
+  });
+}
+
+async function run(study: Prepared, replicate: number): Promise<void> {
+  const store = memoryStore();
+  let steps = 0;
+  let told = performance.now();
+  runReplicate(study, factsOf(study), store, replicate, () => {
+    steps++;
+    const now = performance.now();
+    if (now - told < TELL) return;
+    told = now;
+    scope.postMessage({ kind: 'steps', steps });
+    steps = 0;
+  });
+  scope.postMessage({ kind: 'steps', steps });
+  scope.postMessage({ kind: 'ran', replicate, parts: new Map(store.files) }, buffersOf(store.files));
+}
+
+async function assembleParts(whole: Prepared, parts: Files, replicates: number, seconds: number): Promise<void> {
+  const store = memoryStore();
+  for (const [name, bytes] of parts) writeAll(store, name, bytes);
+  // only so many replicates are there yet
+  const study = { ...whole.study, replicates };
+  const facts = factsOf(whole);
+  const { tables, notes } = finishTables(store, facts, study);
+  for (const [path, text] of Object.entries(whole.inputs.texts)) writeAll(store, path, text);
+  const files = await bundle(store, {
+    head: {
+      version: VERSION,
+      study: study.study,
+      studyHash: await hashed(canonicalText(whole)),
+      seed: study.seed,
+      arms: study.arms.map((arm) => arm.name),
+      replicates,
+      generations: study.generations,
+      households: householdsOf(whole),
+      started: new Date().toISOString(),
+    },
+    studyYaml: studyText(whole.study),
     facts,
     formats: study.keep.formats,
     tables,
-    end: { seconds: (performance.now() - began) / 1000, peakMemory: 0, notes },
+    // a page cannot tell its memory
+    end: { seconds, peakMemory: 0, notes },
   });
-  const out = new Map([...made].map(([name, bytes]) => [name, bytes] as const));
-  scope.postMessage({ kind, files: out, replicates }, [...new Set([...out.values()].map((bytes) => bytes.buffer))]);
+  scope.postMessage({ kind: 'assembled', files: new Map(files), replicates }, buffersOf(files));
 }
 
-function copyOf(store: MemoryStore): MemoryStore {
-  const copy = memoryStore();
-  for (const [name, bytes] of store.files) writeAll(copy, name, bytes);
-  return copy;
+function buffersOf(files: Files): ArrayBuffer[] {
+  return [...new Set([...files.values()].map((bytes) => bytes.buffer))];
 }
 
 async function hashed(text: string): Promise<string> {

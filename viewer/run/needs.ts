@@ -12,7 +12,12 @@ export interface Needs {
   readonly rows: number;
   /** Bytes while it runs, results included. */
   readonly bytes: number;
+  /** Bytes of these for one replicate at work. */
+  readonly work: number;
 }
+
+/** What a page can hold: browsers give one page about 4 GB. */
+export const MOST_BYTES = 3.5e9;
 
 /** Bytes of a panel row in Parquet: measured 150 to 190 for a panel with one milestone; numbers hardly compress. */
 const ROW_PARQUET = 190;
@@ -57,7 +62,12 @@ export function needs(study: Study, households: number): Needs {
   // parts and the tables made of them are in memory together for a moment
   const results = 2 * (rows * row + replicates * (ties * TIE_ROW + arms * households * 40));
   const work = households * 8 * WORKING_COLUMNS + ties * 2 * 24;
-  return { householdGenerations: households * generations * arms * replicates, rows, bytes: BASE + results + work };
+  return {
+    householdGenerations: households * generations * arms * replicates,
+    rows,
+    bytes: BASE + results + work,
+    work,
+  };
 }
 
 /** Memory in words: `needs about 210 MB`. */

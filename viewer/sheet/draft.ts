@@ -121,6 +121,15 @@ const AT_KEY: ReadonlySet<string> = new Set(['unknown-key', 'keys-exclude', 'not
 function faultOf(problem: Problem, text: string, lines: LineCounter, spots: readonly Spot[]): Fault {
   const at = /^study:(\d+):(\d+)$/.exec(problem.place);
   const { code, remedy } = problem;
+  // a network that cannot be built names the part of the study instead of its line
+  const part = at === null && /^arms\[\d+\]/.test(problem.place) ? pathOf(problem.place) : null;
+  if (part !== null) {
+    const stands = nearestSpot(spots, part);
+    const from = stands?.from ?? 0;
+    const { line, col } = lines.linePos(from);
+    const to = stands?.to ?? from;
+    return { code, path: part, line, column: col, from, to, problem: problem.problem, remedy, elsewhere: null };
+  }
   if (at === null) {
     return {
       code,
@@ -180,9 +189,13 @@ export function pathAt(draft: Draft, offset: number): Path | null {
 
 /** Where a setting stands in the text, or the nearest part of the study around it. */
 export function spotOf(draft: Draft, path: Path): Spot | null {
+  return nearestSpot(draft.spots, path);
+}
+
+function nearestSpot(spots: readonly Spot[], path: Path): Spot | null {
   for (let length = path.length; length > 0; length--) {
     const wanted = pathText(path.slice(0, length));
-    const found = draft.spots.find((one) => pathText(one.path) === wanted);
+    const found = spots.find((one) => pathText(one.path) === wanted);
     if (found !== undefined) return found;
   }
   return null;

@@ -143,6 +143,7 @@ export class YamlEditor {
           EditorState.tabSize.of(2),
           syntaxHighlighting(highlight),
           highlightActiveLine(),
+          EditorView.lineWrapping,
           lintGutter(),
           marked,
           // Tab is left to the keyboard's way through the page
@@ -173,11 +174,6 @@ export class YamlEditor {
     this.#silent = true;
     this.#view.dispatch({ changes: change, userEvent: 'input.type.form' });
     this.#silent = false;
-  }
-
-  /** Starts over with another text: nothing to undo. */
-  reset(text: string): void {
-    this.replace(text);
   }
 
   undo(): void {

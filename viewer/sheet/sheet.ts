@@ -11,7 +11,7 @@ import { InputError, type Problem } from '../../network/errors.js';
 import { filesOf, loadInputs } from '../../sim/study/inputs.js';
 import { pathText } from '../../sim/study/problems.js';
 import { StudyFile } from '../../sim/study/schema.js';
-import { memoryWords, needs } from '../run/needs.js';
+import { MOST_BYTES, memoryWords, needs } from '../run/needs.js';
 import { plural } from '../screen/words.js';
 import { BUILT_IN, builtInFiles } from './built-in.js';
 import { type Draft, draftOf, type Fault, faultsOf, faultsWithin, pathAt, spotOf } from './draft.js';
@@ -49,6 +49,9 @@ export interface SheetState {
   /** Frees the editor. */
   close(): void;
 }
+
+/** Edits of sheets that were closed without running, by the study they were opened on: closing loses nothing. */
+const unfinished = new Map<string, { readonly yaml: string; readonly files: ReadonlyMap<string, Uint8Array> }>();
 
 const IDLE: SheetEvents = { close: () => {}, run: () => {}, save: () => {}, changed: () => {} };
 
@@ -101,6 +104,12 @@ class Sheet implements SheetState {
       this.element.addEventListener(kind, (event) => this.#drag(event));
     }
     this.#editor.show(this.#draft.faults);
+    const left = unfinished.get(yaml);
+    if (left !== undefined) {
+      for (const [name, bytes] of left.files) this.files.set(name, bytes);
+      // as an edit, so that undo leads back to the study as it was opened
+      this.#editor.replace(left.yaml);
+    }
     this.#render();
     this.#readFiles();
   }
@@ -130,6 +139,8 @@ class Sheet implements SheetState {
   }
 
   close(): void {
+    if (this.edited) unfinished.set(this.#first, { yaml: this.yaml, files: this.files });
+    else unfinished.delete(this.#first);
     this.#editor.close();
     this.element.remove();
   }
@@ -633,6 +644,11 @@ class Sheet implements SheetState {
     const reading = file === undefined ? undefined : this.#readings.find(({ name }) => name === file);
     const n = study.population.households ?? Number.parseInt((reading?.facts[0]?.says ?? '0').replace(/\s/g, ''), 10);
     const { arms, replicates, generations } = study;
-    return `${plural(n, 'household')}, ${plural(arms.length, 'arm')}, ${plural(replicates, 'replicate')} of ${plural(generations, 'generation')}; ${memoryWords(needs(study, n))}.`;
+    const needed = needs(study, n);
+    const more =
+      needed.bytes > MOST_BYTES
+        ? ', more than a page can hold: keep a part of the panel, or run it by the command line'
+        : '';
+    return `${plural(n, 'household')}, ${plural(arms.length, 'arm')}, ${plural(replicates, 'replicate')} of ${plural(generations, 'generation')}; ${memoryWords(needed)}${more}.`;
   }
 }
