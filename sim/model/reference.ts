@@ -50,13 +50,15 @@ export interface Reference {
 /** Second circles are kept as rows up to this many members in all (128 MB), else found anew each generation. */
 const SECOND_CIRCLE_LIMIT = 1 << 25;
 
+/** @param secondCircleLimit - members of second circles to keep in memory; results do not depend on it */
 export function compileReference(
   milestones: readonly Milestone[],
   persistence: number,
   households: Households,
   ties: Ties,
+  secondCircleLimit: number = SECOND_CIRCLE_LIMIT,
 ): Reference {
-  return new CompiledReference(milestones, persistence, households, ties);
+  return new CompiledReference(milestones, persistence, households, ties, secondCircleLimit);
 }
 
 /** One distinct statistic: where its values are kept between computing and mixing. */
@@ -77,14 +79,22 @@ class CompiledReference implements Reference {
   private readonly ties: Ties;
   private readonly sources: Source[];
   private readonly scratch: Scratch;
+  private readonly limit: number;
   private circles: Rows | SecondCircle | null;
 
-  constructor(milestones: readonly Milestone[], persistence: number, households: Households, ties: Ties) {
+  constructor(
+    milestones: readonly Milestone[],
+    persistence: number,
+    households: Households,
+    ties: Ties,
+    limit: number,
+  ) {
     if (ties.n !== households.n) throw new ShapeError('ties', ties.n, households.n, 'one row per household');
     this.milestones = milestones;
     this.persistence = persistence;
     this.households = households;
     this.ties = ties;
+    this.limit = limit;
     this.circles = null;
     this.sources = distinctSources(milestones, households.n);
     let longest = 0;
@@ -92,14 +102,14 @@ class CompiledReference implements Reference {
     this.scratch = { values: new Float64Array(longest) };
     if (this.sources.some((source) => source.part.from === 'second_circle')) {
       const finder = new SecondCircle(ties);
-      this.circles = finder.rows(SECOND_CIRCLE_LIMIT) ?? finder;
+      this.circles = finder.rows(limit) ?? finder;
       // a second circle can be as long as the population
       this.scratch = { values: new Float64Array(ties.n) };
     }
   }
 
   withTies(ties: Ties): Reference {
-    return new CompiledReference(this.milestones, this.persistence, this.households, ties);
+    return new CompiledReference(this.milestones, this.persistence, this.households, ties, this.limit);
   }
 
   form(

@@ -181,8 +181,9 @@ function similarityOfRow(
 /** Finds second circles: ties of ties, the household and its own ties left out, each once, ascending. */
 export class SecondCircle {
   private readonly ties: Ties;
-  /** mark[j] = i + 1 when j has been seen from i. */
+  /** mark[j] is the number of the last search that saw j. */
   private readonly mark: Uint32Array;
+  private searches: number;
   /** Members of the last household asked for, in the first `size` places. */
   members: Uint32Array;
   size: number;
@@ -190,6 +191,7 @@ export class SecondCircle {
   constructor(ties: Ties) {
     this.ties = ties;
     this.mark = new Uint32Array(ties.n);
+    this.searches = 0;
     this.members = new Uint32Array(256);
     this.size = 0;
   }
@@ -198,7 +200,11 @@ export class SecondCircle {
   find(i: number): void {
     const { start, target } = this.ties;
     const mark = this.mark;
-    const stamp = i + 1;
+    if (this.searches === 0xffffffff) {
+      mark.fill(0);
+      this.searches = 0;
+    }
+    const stamp = ++this.searches;
     mark[i] = stamp;
     for (let e = start[i]; e < start[i + 1]; e++) mark[target[e]] = stamp;
     let size = 0;

@@ -90,25 +90,25 @@ describe('the choice agrees with brute force', () => {
   test('threshold milestones, planned risk', () => {
     fc.assert(
       fc.property(problems('threshold', 'planned'), (problem) => checkAgainstBruteForce(problem, 400)),
-      { numRuns: 300, seed: 1 },
+      { numRuns: 300, seed: 1, endOnFailure: true },
     );
   });
   test('gain-loss milestones, planned risk', () => {
     fc.assert(
       fc.property(problems('gain-loss', 'planned'), (problem) => checkAgainstBruteForce(problem, 200)),
-      { numRuns: 200, seed: 2 },
+      { numRuns: 200, seed: 2, endOnFailure: true },
     );
   });
   test('threshold milestones, expected risk', () => {
     fc.assert(
       fc.property(problems('threshold', 'expected'), (problem) => checkAgainstBruteForce(problem, 40)),
-      { numRuns: 12, seed: 3 },
+      { numRuns: 12, seed: 3, endOnFailure: true },
     );
   });
   test('gain-loss milestones, expected risk', () => {
     fc.assert(
       fc.property(problems('gain-loss', 'expected'), (problem) => checkAgainstBruteForce(problem, 40)),
-      { numRuns: 25, seed: 4 },
+      { numRuns: 25, seed: 4, endOnFailure: true },
     );
   });
 });
