@@ -101,7 +101,7 @@ export function answerOf(study: Study, cube: IndicatorCube, lives: readonly Pock
     }
   }
   if (arms.length === 1) words.push(levelSentence(cube, decided));
-  lives.forEach((life, a) => words.push(...pocketSentences(life, arms[a]!, cube, a, arms)));
+  for (const [a, life] of lives.entries()) words.push(...pocketSentences(life, arms[a]!, cube, a, arms));
   const wanted = contrasts.find((row) => row.replicates > 1);
   if (wanted !== undefined) words.push(precisionSentence(wanted));
   const groups = study.population.places?.count;
