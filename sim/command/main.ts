@@ -23,7 +23,7 @@ const program = new Command('rungsight')
   .version(VERSION, '--version', 'print the version')
   .helpOption('--help', 'show help')
   .configureHelp({ showGlobalOptions: false })
-  .showHelpAfterError(false)
+  .configureOutput({ outputError: (text, write) => write(`${usageProblem(text)}\n`) })
   .exitOverride();
 
 for (const register of [runCommand, checkCommand, presetsCommand, viewCommand, estimateCommand, networkCommand]) {
@@ -38,8 +38,19 @@ try {
 }
 
 function leaveExitsToMain(command: Command): void {
-  command.exitOverride().helpOption('--help', 'show help');
+  command.exitOverride().helpOption('--help', 'show help').copyInheritedSettings(program);
   for (const inner of command.commands) leaveExitsToMain(inner);
+}
+
+/** A usage error of the parser in the form of ours: `where: what is wrong; what to do`. */
+function usageProblem(text: string): string {
+  const [first, second] = text.trim().split('\n');
+  const words = process.argv.slice(2).filter((word) => !word.startsWith('-'));
+  const command = program.commands.find((one) => one.name() === words[0])?.name();
+  const where = command === undefined ? 'rungsight' : `rungsight ${command}`;
+  const guess = /\(Did you mean (.*)\?\)/.exec(second ?? '')?.[1];
+  const remedy = guess === undefined ? `see '${where} --help'` : `did you mean ${guess}? ('${where} --help')`;
+  return `${where}: ${(first ?? '').replace(/^error: /, '')}; ${remedy}`;
 }
 
 /** Says what went wrong on standard error and gives the exit status. */
