@@ -80,6 +80,10 @@ const LEFT_OVER = 0.05;
 const RISE = 1;
 /** Spread of log wealth below which everybody is equal. */
 const EQUAL = 1e-3;
+/** Growth is steady when its steps shrink by no more than this factor a generation. */
+const STEADY = 0.9;
+/** Generations in a window that shows a round of up to eight generations returning twice. */
+const LONG = 10;
 /** Share frustrated from which everyone is. */
 const EVERYONE = 0.999;
 /** Profiles that come this close, relative to how far they go, have returned. */
@@ -150,7 +154,13 @@ export function classifyRegime(series: readonly RegimeObservation[]): RegimeVerd
   const cycle = cycleOf(window);
   if (cycle !== null) return verdict('cycling', { period: cycle.period, distance: cycle.distance });
   if (isDeclining(decided)) return verdict('declining');
-  if (Math.max(...spread) < EQUAL) return verdict('converging');
+  if (Math.max(...spread) < EQUAL) {
+    // equals who neither stand still nor grow steadily may be on a round too long for the window to see
+    const pace = paceOf(level);
+    const steady = Math.abs(pace.step) <= STILL || pace.ratio >= STEADY;
+    if (steady || window.length >= LONG) return verdict('converging');
+    return verdict('undecided', { moreGenerations: Math.max(1, 3 * LONG - last) });
+  }
 
   const stands =
     Math.abs(spreadLine.slope) <= STILL * meanSpread ||
