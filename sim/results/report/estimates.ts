@@ -7,6 +7,9 @@ import { type CoefficientStrip, coefficientsFigure } from '../figures/coefficien
 import { safe } from '../figures/figure.js';
 import { count, fixed, list, NONE, num, p, pct, plate, pValue, table } from './words.js';
 
+/** The constant as results name it. */
+const CONSTANT = '(const)';
+
 interface Term {
   readonly term: string;
   readonly estimate: number;
@@ -123,7 +126,7 @@ function one(summaries: readonly Summary[], regressions: readonly Regression[], 
     `${count(Math.round(summaries[0].mean_nobs), 'row')}${replicates > 1 ? ` on average, ${count(replicates, 'replicate')}` : ''}` +
     `${pooled && summaries[0].arm !== null && arms.length > 1 ? ', all arms together' : ''}.`;
   const terms = [...new Set(summaries.flatMap((summary) => summary.terms.map((term) => term.term)))];
-  const shown = terms.filter((term) => term !== 'constant' && term !== '(constant)');
+  const shown = terms.filter((term) => term !== CONSTANT);
   const marks = pooled ? [summaries[0].arm ?? ''] : arms;
   const strips = shown.map((term): CoefficientStrip => {
     return {
