@@ -18,8 +18,11 @@ import type { RunPage, Told } from './pages/run.js';
 
 const COMMAND = fileURLToPath(new URL('../../dist/sim/command/main.js', import.meta.url));
 
-/** Drawn households, both formats, all arms. */
-const DRAWN = `${SAMPLE}keep: {formats: [parquet, csv]}\n`;
+/** A study small enough to run many times. */
+const SMALL = `${SAMPLE.replace('households: 300', 'households: 120').replace(', within_group: 0.8', '')}pockets: {permutations: 19}\n`;
+
+/** Drawn households, both formats. */
+const DRAWN = `${SMALL.replace('replicates: 4', 'replicates: 2')}keep: {formats: [parquet, csv]}\n`;
 
 /** Households and ties of files, invented: a ring of forty in two places. */
 const PEOPLE = ['household,wealth,place,group,x_land']
@@ -128,7 +131,7 @@ describe('the bytes of a run in the page', () => {
   });
 
   test('do not depend on the number of workers, nor does CSV made of a panel kept as Parquet', async () => {
-    const yaml = SAMPLE.replace('replicates: 4', 'replicates: 5');
+    const yaml = SMALL.replace('replicates: 4', 'replicates: 3');
     const one = await inPage(yaml, {}, 1);
     const three = await inPage(yaml, {}, 3);
     const { 'manifest.json': _, ...first } = one.digests;
@@ -144,18 +147,18 @@ describe('the bytes of a run in the page', () => {
 
 describe('while it runs', () => {
   test('the first replicate can be looked at before the rest is there, and says the same then and later', async () => {
-    const told = await inPage(SAMPLE.replace('replicates: 4', 'replicates: 6'), {}, 2);
+    const told = await inPage(SMALL.replace('replicates: 4', 'replicates: 3'), {}, 2);
     expect(told.arrived[0]).toEqual([1, false]);
-    expect(told.arrived.at(-1)).toEqual([6, true]);
+    expect(told.arrived.at(-1)).toEqual([3, true]);
     const shares = await page.evaluate(async () => {
       const { page: run } = window as unknown as { page: RunPage };
-      return [await run.frustrated(0, 0, 3), await run.frustrated(1, 5, 0)];
+      return [await run.frustrated(0, 0, 3), await run.frustrated(1, 2, 0)];
     });
     for (const count of shares) expect(count).toBeGreaterThanOrEqual(0);
   });
 
   test('progress never falls, ends in the tables, and tells time and rate', async () => {
-    const told = await inPage(SAMPLE.replace('households: 300', 'households: 1000'), {}, 1);
+    const told = await inPage(SMALL.replace('households: 120', 'households: 600'), {}, 1);
     const shares = told.progress.map(([share]) => share);
     expect([...shares].sort((a, b) => a - b)).toEqual(shares);
     expect(told.progress.at(-1)![1]).toBe('writing the tables');
@@ -165,7 +168,7 @@ describe('while it runs', () => {
   });
 
   test('it stops at once and says nothing more', async () => {
-    const told = await inPage(SAMPLE.replace('households: 300', 'households: 5000'), {}, 2, 0.05);
+    const told = await inPage(SMALL.replace('households: 120', 'households: 3000'), {}, 2, 0.05);
     expect(told.arrived.filter(([, whole]) => whole)).toEqual([]);
     expect(told.progress.at(-1)![0]).toBeLessThan(0.9);
   });
@@ -173,17 +176,17 @@ describe('while it runs', () => {
 
 describe('what goes wrong', () => {
   test('in the study is told with line and column', async () => {
-    const told = await inPage(SAMPLE.replace('curvature: 0.6', 'curvature: -1'), {}, 1);
+    const told = await inPage(SMALL.replace('curvature: 0.6', 'curvature: -1'), {}, 1);
     expect(told.problems).toMatchObject([{ code: 'out-of-range', place: 'study:23:14' }]);
   });
 
   test('in building a network is told with the part of the study', async () => {
-    const told = await inPage(SAMPLE.replace('{share: 0.5}', '{target: e_i_group, value: 1}'), {}, 1);
+    const told = await inPage(SMALL.replace('{share: 0.5}', '{target: e_i_group, value: 1}'), {}, 1);
     expect(told.problems[0]?.place).toMatch(/^arms\[1\]/);
   });
 
   test('in wealth that leaves the range of numbers is told with arm and generation', async () => {
-    const told = await inPage(SAMPLE.replace('gross_return: 2.5', 'gross_return: 1e120'), {}, 1);
+    const told = await inPage(SMALL.replace('gross_return: 2.5', 'gross_return: 1e120'), {}, 1);
     expect(told.failed).toMatch(/^arm 'segregated' generation \d+: household \d+/);
   });
 
@@ -194,7 +197,7 @@ describe('what goes wrong', () => {
 
   test('a study too large for a page is refused before it starts', async () => {
     const told = await inPage(
-      SAMPLE.replace('households: 300', 'households: 2000000').replace('replicates: 4', 'replicates: 100'),
+      SMALL.replace('households: 120', 'households: 2000000').replace('replicates: 4', 'replicates: 100'),
       {},
       1,
     );

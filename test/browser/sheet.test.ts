@@ -18,23 +18,22 @@ let complaints: string[];
 
 beforeAll(async () => {
   [site, browser] = await Promise.all([builtPage('sheet'), launch()]);
-});
-afterAll(async () => {
-  await browser.close();
-  await site.close();
-});
-beforeEach(async () => {
   page = await browser.newPage({ viewport: { width: 1280, height: 800 } });
-  complaints = [];
   page.on('console', (message) => {
     if (['error', 'warning'].includes(message.type())) complaints.push(message.text());
   });
   page.on('pageerror', (error) => complaints.push(String(error)));
   await page.goto(site.url);
-  await page.waitForSelector('.study-sheet .question');
 });
-afterEach(async () => {
-  await page.close();
+afterAll(async () => {
+  await browser?.close();
+  await site?.close();
+});
+beforeEach(async () => {
+  complaints = [];
+  await page.evaluate(() => (window as unknown as { page: SheetPage }).page.fresh());
+});
+afterEach(() => {
   // a refused style, a script error or a warning of a library is a failure wherever it comes up
   expect(complaints).toEqual([]);
 });
@@ -74,6 +73,15 @@ describe('two sides of one study', () => {
     expect(await text()).toBe(SAMPLE);
     await page.getByRole('button', { name: 'redo' }).click();
     expect(await page.locator('#set-generations').inputValue()).not.toBe('6');
+  });
+
+  test('closing loses nothing: the edits are there again, and undo leads back', async () => {
+    await page.locator('#set-generations').fill('9');
+    await page.evaluate(() => (window as unknown as { page: SheetPage }).page.reopen());
+    expect(await page.locator('#set-generations').inputValue()).toBe('9');
+    expect(await words(page.locator('.sheet-name'))).toContain('edited');
+    await page.getByRole('button', { name: 'undo' }).click();
+    expect(await text()).toBe(SAMPLE);
   });
 
   test('an intermediate number is left as typed', async () => {

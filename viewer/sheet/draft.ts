@@ -178,13 +178,18 @@ function pathOf(text: string): Path | null {
     .map((step): Step => (/^\d+$/.test(step) ? Number(step) : step));
 }
 
-/** The deepest setting at a place in the text, or null. */
+/** The setting at a place in the text: the deepest there, or the last before it on the line (in a comment); or null. */
 export function pathAt(draft: Draft, offset: number): Path | null {
-  let best: Spot | null = null;
+  const lineStart = draft.text.lastIndexOf('\n', offset - 1) + 1;
+  let inside: Spot | null = null;
+  let onLine: Spot | null = null;
   for (const one of draft.spots) {
-    if (one.from <= offset && offset <= one.to && (best === null || one.path.length >= best.path.length)) best = one;
+    if (one.from > offset) continue;
+    if (offset <= one.to && (inside === null || one.path.length >= inside.path.length)) inside = one;
+    if (one.from >= lineStart && (onLine === null || one.from >= onLine.from)) onLine = one;
   }
-  return best?.path ?? null;
+  if (inside !== null && inside.from >= lineStart) return inside.path;
+  return (onLine ?? inside)?.path ?? null;
 }
 
 /** Where a setting stands in the text, or the nearest part of the study around it. */

@@ -3,20 +3,42 @@ import { openSheet, type SheetState } from '../../../viewer/sheet/sheet.js';
 import { SAMPLE } from '../../viewer/sheet/sample.js';
 
 export interface SheetPage {
-  readonly sheet: SheetState;
-  readonly told: { readonly event: string; readonly yaml?: string; readonly files?: readonly string[] }[];
+  sheet: SheetState;
+  told: { readonly event: string; readonly yaml?: string; readonly files?: readonly string[] }[];
+  /** Closes the sheet and opens one on the same study. */
+  reopen(): void;
+  /** Closes the sheet, forgets its edits, and starts over. */
+  fresh(): void;
 }
 
-const told: SheetPage['told'] = [];
-const sheet = openSheet(SAMPLE);
-sheet.events = {
-  close: () => told.push({ event: 'close' }),
-  run: (yaml, files) => told.push({ event: 'run', yaml, files: [...files.keys()] }),
-  save: (yaml) => told.push({ event: 'save', yaml }),
-  changed: () => {},
+const host = document.getElementById('host') as HTMLElement;
+
+function opened(): SheetState {
+  const sheet = openSheet(SAMPLE);
+  sheet.events = {
+    close: () => page.told.push({ event: 'close' }),
+    run: (yaml, files) => page.told.push({ event: 'run', yaml, files: [...files.keys()] }),
+    save: (yaml) => page.told.push({ event: 'save', yaml }),
+    changed: () => {},
+  };
+  host.append(sheet.element);
+  return sheet;
+}
+
+const page: SheetPage = {
+  sheet: undefined as unknown as SheetState,
+  told: [],
+  reopen() {
+    page.sheet.close();
+    page.sheet = opened();
+  },
+  fresh() {
+    page.sheet.open(SAMPLE);
+    page.told = [];
+    page.reopen();
+  },
 };
 document.documentElement.dataset.theme = new URLSearchParams(location.search).get('theme') ?? 'light';
-const host = document.getElementById('host') as HTMLElement;
 host.style.setProperty('height', '100dvh');
-host.append(sheet.element);
-(window as unknown as { page: SheetPage }).page = { sheet, told };
+page.sheet = opened();
+(window as unknown as { page: SheetPage }).page = page;

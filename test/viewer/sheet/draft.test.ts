@@ -42,6 +42,8 @@ describe('a draft', () => {
     const draft = draftOf(SAMPLE);
     const at = SAMPLE.indexOf('0.42');
     expect(pathAt(draft, at)).toEqual(['population', 'wealth', 'gini']);
+    expect(pathAt(draft, SAMPLE.indexOf('# σ'))).toEqual(['preferences', 'curvature']);
+    expect(pathAt(draft, SAMPLE.indexOf('# the end') + 3)).toBeNull();
     const spot = spotOf(draft, ['population', 'wealth', 'gini'])!;
     expect(SAMPLE.slice(spot.from, spot.to)).toBe('gini: 0.42');
     // a setting that is not written is looked for at the part around it
