@@ -126,8 +126,10 @@ describe('Duclos–Esteban–Ray', () => {
 
 describe('dip', () => {
   test('is at least 1/(2n) and at most ¼, and knows no unit, origin or direction', () => {
+    // whole numbers, so that no change of unit makes different ones equal by rounding
+    const whole = fc.array(fc.integer({ min: 1, max: 300 }), { minLength: 3, maxLength: 120 });
     fc.assert(
-      fc.property(wealth, (x) => {
+      fc.property(whole, (x) => {
         const { dip: d, n } = dip(x);
         expect(d).toBeGreaterThanOrEqual(1 / (2 * n) - 1e-15);
         expect(d).toBeLessThanOrEqual(0.25 + 1e-12);
