@@ -536,10 +536,7 @@ class Sheet implements SheetState {
       </div>
       ${fieldsTemplate(
         context,
-        field.fields
-          .filter((inner) => takes(inner.key) || written[inner.key] !== undefined)
-          // drawn households cannot do without it, so it is not offered for removal
-          .map((inner) => (inner.key === 'wealth' && origin === 'drawn' ? { ...inner, optional: false } : inner)),
+        populationFields(field, origin).filter((inner) => takes(inner.key) || written[inner.key] !== undefined),
         ['population'],
         0,
       )}`;
@@ -651,4 +648,24 @@ class Sheet implements SheetState {
         : '';
     return `${plural(n, 'household')}, ${plural(arms.length, 'arm')}, ${plural(replicates, 'replicate')} of ${plural(generations, 'generation')}; ${memoryWords(needed)}${more}.`;
   }
+}
+
+/** The population's settings as the origin of the households has them. */
+function populationFields(field: GroupField, origin: Origin): Field[] {
+  if (origin === 'drawn') {
+    // drawn households cannot do without wealth, so it is not offered for removal
+    return field.fields.map((inner) => (inner.key === 'wealth' ? { ...inner, optional: false } : inner));
+  }
+  const [file, others] = [
+    field.fields.filter(({ key }) => key === 'households_file'),
+    field.fields.filter(({ key }) => key !== 'households_file'),
+  ];
+  return [...file, ...others.map((inner) => (inner.key === 'groups' ? withoutShares(inner) : inner))];
+}
+
+/** A file says who is in a group and what they own. */
+function withoutShares(groups: Field): Field {
+  if (groups.kind !== 'list' || groups.item.kind !== 'group') return groups;
+  const fields = groups.item.fields.filter(({ key }) => key !== 'share' && key !== 'relative_wealth');
+  return { ...groups, item: { ...groups.item, fields } };
 }

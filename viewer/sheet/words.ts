@@ -149,7 +149,6 @@ const CHOICES: Readonly<Record<string, string>> = {
   assortativity: 'assortativity of wealth rank',
   e_i_group: 'E–I index of groups',
   within_place: 'within each place',
-  everyone: 'over everyone',
 };
 
 /** A choice in words. */
