@@ -45,6 +45,14 @@ arms:
     network: {from: apart, mixing: {share: 1}}
 `;
 
+/** Two groups in one place that hardly meet, and the same households mixed. */
+export const SEPARATED = HAMLETS.replace('Twenty hamlets', 'Two peoples')
+  .replace('replicates: 3', 'replicates: 1')
+  .replace('generations: 6', 'generations: 2')
+  .replace('  places: {count: 20, size_cv: 0.1}\n', '')
+  .replace(', between_places: 0.5525', '')
+  .replace('within_place: 0.97', 'within_group: 0.92');
+
 export interface MadeResults {
   readonly dir: string;
   readonly files: ReadonlyMap<string, Uint8Array>;

@@ -339,8 +339,7 @@ class FolderSource implements Source {
   }
 
   async #estimates(): Promise<Table | null> {
-    const file = await this.#files.open('estimates.csv');
-    if (file === null) return null;
+    if (!this.#results.manifest.files.some((file) => file.name === 'estimates.csv')) return null;
     const data = await this.#results.table('estimates').catch(() => null);
     return data === null ? null : asTable(data);
   }

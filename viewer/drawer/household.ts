@@ -54,8 +54,9 @@ export function householdPanel(app: App): TemplateResult {
     () => lineOf(app, armIndex, i),
     () => app.render(),
   );
-  const third = units(app, 0.345, 20);
-  const first = units(app, 0.32, 16);
+  const second = units(app, 0.31, 20);
+  const third = units(app, 0.38, 20);
+  const first = units(app, 0.31, 16);
   const height = first.height - 22;
   const descentPart =
     line === undefined
@@ -84,21 +85,22 @@ export function householdPanel(app: App): TemplateResult {
   const society = mean(arm.now.wealth);
   const usesSociety = model.milestones.some((m) => m.mix.some((p) => p.from === 'society' && p.weight > 0));
   const frustrated = arm.now.met[i] === 0;
+  const heading = `Whom it sees: ${model.milestones.map((_, m) => mixInWords(model, m)).join('; then ')}`;
   return html`<div class="household">
     <div>${descentPart}</div>
     <div>${shown(
       app,
       `household-${view.household}-decision`,
-      'The decision now: lifetime utility against planned child wealth',
-      decisionFigure({ width: third.width, height }, decision),
+      'The decision: lifetime utility',
+      decisionFigure({ width: second.width, height }, decision),
     )}</div>
     <div class="sees">
       ${shown(
         app,
         `household-${view.household}-reference`,
-        `Whom it sees: ${model.milestones.map((_, m) => mixInWords(model, m)).join('; then ')}`,
+        heading.length * 6.7 < third.width - 30 ? heading : 'Whom it sees',
         referenceFigure(
-          { width: units(app, 0.335, 20).width, height: 68 },
+          { width: third.width, height: 66 },
           { own: arm.now.wealth[i], neighbours, aspirations, frustrated, society: usesSociety ? society : NaN },
         ),
       )}
@@ -125,9 +127,9 @@ function whatIf(app: App, problem: Problem, society: number): TemplateResult {
   const does = (met: number): string => (met > 0 ? 'within reach' : 'out of reach');
   const cause =
     now.met === 0 && asAll.met > 0
-      ? 'a local cause'
+      ? 'local cause'
       : now.met === 0
-        ? 'a general cause'
+        ? 'general cause'
         : asAll.met === 0
           ? 'it is sheltered'
           : asAll.planned > now.planned
@@ -148,7 +150,7 @@ function whatIf(app: App, problem: Problem, society: number): TemplateResult {
   return html`<div class="what-if">
     <h3 class="hidden-text">What if</h3>
     <ul>
-      ${row('If it saw everyone:', wide[0], asAll.met, `${cause}${differs}`)}
+      ${row('Seeing everyone:', wide[0], asAll.met, `${cause}${differs}`)}
       ${asThere === null || elsewhere === null ? nothing : row(`As in ${other.name}:`, elsewhere[0], asThere.met, '')}
       ${
         Number.isFinite(enough)

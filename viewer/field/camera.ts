@@ -26,7 +26,7 @@ export function pan(camera: Camera, dx: number, dy: number, width: number, heigh
 /** Frames a box of field pixels with some room around it. */
 export function frame(box: readonly [number, number, number, number], width: number, height: number): Camera {
   const [x0, y0, x1, y1] = box;
-  const room = 0.55;
+  const room = 0.62;
   const zoom = Math.max(
     1,
     Math.min(12, (width * room) / Math.max(x1 - x0, width / 40), (height * room) / Math.max(y1 - y0, height / 40)),

@@ -249,6 +249,11 @@ export class Stage {
     this.#draw();
   }
 
+  /** Ties drawn in each field at most while something moves: for measuring. */
+  get tiesWhileMoving(): number {
+    return this.#sample;
+  }
+
   /** Waits for the card: for measuring. */
   settle(): void {
     this.#canvas.settle();

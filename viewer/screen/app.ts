@@ -179,7 +179,8 @@ export class App {
     const arm = this.scene?.arms[field];
     if (arm === undefined) return;
     const members: number[] = [];
-    for (let i = 0; i < arm.now.pocket.length; i++) if (arm.now.pocket[i] === id) members.push(i);
+    for (let i = 0; i < arm.now.pocket.length; i++)
+      if (arm.now.pocket[i] === id && arm.now.role[i] === ROLE.core) members.push(i);
     void this.change({ pocket: { field, id } }).then(() => this.stage?.frameOn(members, field));
   }
 
