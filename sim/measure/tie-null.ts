@@ -95,9 +95,10 @@ export function moranNull(list: TieList, value: Float64Array, i: number, plan: P
   let drawn = 0;
   while (drawn < count && extreme < enough) {
     const lanes = Math.min(WIDTH, count - drawn);
+    // household h is given the value of household order[h]: as random as the other way round, and writes in order
     for (let lane = 0; lane < lanes; lane++) {
       const order = plan.list(drawn + lane);
-      for (let h = 0; h < n; h++) spread[order[h] * WIDTH + lane] = z[h];
+      for (let h = 0, at = lane; h < n; h++, at += WIDTH) spread[at] = z[order[h]];
     }
     crossProducts(source, target, weight, spread, cross);
     for (let lane = 0; lane < lanes; lane++) if (Math.abs(cross[lane] / square - expected) >= limit) extreme++;
