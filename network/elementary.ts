@@ -83,6 +83,18 @@ const PER_STEP = CELLS / toNumber(LN2);
 const POWER_OF_TWO = new Float64Array(2047);
 for (let k = -1023; k <= 1023; k++) POWER_OF_TWO[k + 1023] = 2 ** k;
 
+/** The tables and constants, for the engine's compiled copy of these functions. */
+export const TABLES = {
+  log: LOG_TABLE,
+  exp: EXP_TABLE,
+  powerOfTwo: POWER_OF_TWO,
+  ln2High: LN2_HIGH,
+  ln2Low: LN2_LOW,
+  stepHigh: STEP_HIGH,
+  stepLow: STEP_LOW,
+  perStep: PER_STEP,
+} as const;
+
 /** Adding and taking away 1.5·2^52 rounds a double of magnitude below 2^51 to the nearest integer. */
 const ROUND = 6755399441055744;
 

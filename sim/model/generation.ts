@@ -4,9 +4,11 @@
  * The caller owns time: it fills `wealth`, applies changes, steps, records, and carries child wealth over.
  */
 import type { Ties } from '../../network/graph.js';
+import { CHUNK, type Kernel, kernel } from '../kernel/kernel.js';
 import type { Draws } from '../random/draws.js';
 import { type Choice, compileChoice } from './choice.js';
 import { GrowthTableChoice, growthAt } from './growth-table.js';
+import { PlannedChoice } from './planned.js';
 import { compileReference, type Reference } from './reference.js';
 import { drawShocks } from './shock.js';
 import type { Generation, Households, Milestone, Model, Part } from './types.js';
@@ -84,21 +86,35 @@ export function createEngine(model: Model, households: Households, ties: Ties): 
   return new CompiledEngine(model, households, ties, choices, reference);
 }
 
+/** Households that are solved alike. */
+interface Task {
+  readonly choice: Choice;
+  /** Their numbers, ascending; null for everyone. */
+  readonly members: Uint32Array | null;
+}
+
 class CompiledEngine implements Engine {
   readonly model: Model;
   readonly reference: Reference;
   readonly choices: readonly Choice[];
   private readonly households: Households;
   private readonly ties: Ties;
-  private readonly own: Float64Array;
+  private readonly tasks: readonly Task[];
 
-  constructor(model: Model, households: Households, ties: Ties, choices: readonly Choice[], reference: Reference) {
+  constructor(
+    model: Model,
+    households: Households,
+    ties: Ties,
+    choices: readonly Choice[],
+    reference: Reference,
+    tasks: readonly Task[] = tasksOf(choices, households),
+  ) {
     this.model = model;
     this.households = households;
     this.ties = ties;
     this.choices = choices;
     this.reference = reference;
-    this.own = new Float64Array(model.milestones.length);
+    this.tasks = tasks;
   }
 
   step(
@@ -108,22 +124,11 @@ class CompiledEngine implements Engine {
     inherited: readonly Float64Array[] | null,
     aspirationFactor: Float64Array | null = null,
   ): void {
-    const { wealth, aspirations, investment, consumption, planned, shock, childWealth, met, reached, isolated } =
-      generation;
+    const { wealth, aspirations, planned, met, investment, shock, isolated } = generation;
     this.reference.form(wealth, inherited, aspirations, isolated, aspirationFactor);
     this.choose(wealth, aspirations, planned, met, investment);
     drawShocks(this.model.shock, this.households, draws, t, shock);
-    const n = wealth.length;
-    for (let i = 0; i < n; i++) {
-      consumption[i] = wealth[i] - investment[i];
-      childWealth[i] = planned[i] * shock[i];
-    }
-    const first = aspirations[0];
-    for (let i = 0; i < n; i++) reached[i] = childWealth[i] >= first[i] ? 1 : 0;
-    for (let m = 1; m < aspirations.length; m++) {
-      const aspiration = aspirations[m];
-      for (let i = 0; i < n; i++) if (childWealth[i] >= aspiration[i]) reached[i]++;
-    }
+    fillOutcome(generation);
   }
 
   resolveUnder(
@@ -143,7 +148,8 @@ class CompiledEngine implements Engine {
   }
 
   withTies(ties: Ties): Engine {
-    return new CompiledEngine(this.model, this.households, ties, this.choices, this.reference.withTies(ties));
+    const reference = this.reference.withTies(ties);
+    return new CompiledEngine(this.model, this.households, ties, this.choices, reference, this.tasks);
   }
 
   private choose(
@@ -153,60 +159,147 @@ class CompiledEngine implements Engine {
     met: Uint8Array,
     investment: Float64Array | null,
   ): void {
-    const { group, childWeight } = this.households;
-    const { choices, own } = this;
-    const n = wealth.length;
-    const M = aspirations.length;
-    const only = choices.length === 1 ? choices[0] : null;
-    if (only instanceof GrowthTableChoice) {
-      chooseByTable(only, wealth, aspirations[0], childWeight, own, planned, met, investment);
-      return;
+    const plans: Plans = { planned, met, investment };
+    const { childWeight } = this.households;
+    const compiled = kernel();
+    for (const { choice, members } of this.tasks) {
+      if (choice instanceof GrowthTableChoice) chooseByTable(choice, members, wealth, aspirations[0], plans);
+      else if (choice instanceof PlannedChoice && compiled !== null) {
+        chooseByKernel(compiled, choice, members, wealth, aspirations, childWeight, plans);
+      } else chooseOneByOne(choice, members, wealth, aspirations, childWeight, plans);
     }
+  }
+}
+
+/** Where plans are written; `investment` only when asked for. */
+interface Plans {
+  readonly planned: Float64Array;
+  readonly met: Uint8Array;
+  readonly investment: Float64Array | null;
+}
+
+/** Households by group; those whose child weight a group's table was not made for go to its exact solver. */
+function tasksOf(choices: readonly Choice[], { n, group, childWeight }: Households): Task[] {
+  const tasks: Task[] = [];
+  choices.forEach((choice, g) => {
+    const regular: number[] = [];
+    const others: number[] = [];
     for (let i = 0; i < n; i++) {
-      const choice = only ?? choices[group[i]];
-      for (let m = 0; m < M; m++) own[m] = aspirations[m][i];
-      choice.solve(wealth[i], own, childWeight[i]);
-      planned[i] = choice.planned;
-      met[i] = choice.met;
-      if (investment !== null) investment[i] = choice.investment;
+      if (choices.length > 1 && group[i] !== g) continue;
+      if (choice instanceof GrowthTableChoice && childWeight[i] !== choice.childWeight) others.push(i);
+      else regular.push(i);
     }
+    if (regular.length > 0) tasks.push({ choice, members: regular.length === n ? null : Uint32Array.from(regular) });
+    if (others.length > 0 && choice instanceof GrowthTableChoice) {
+      tasks.push({ choice: choice.exact, members: others.length === n ? null : Uint32Array.from(others) });
+    }
+  });
+  return tasks;
+}
+
+function fillOutcome(generation: Generation): void {
+  const { wealth, aspirations, investment, consumption, planned, shock, childWealth, reached } = generation;
+  const n = wealth.length;
+  const first = aspirations[0];
+  for (let i = 0; i < n; i++) {
+    consumption[i] = wealth[i] - investment[i];
+    const outcome = planned[i] * shock[i];
+    childWealth[i] = outcome;
+    reached[i] = outcome >= first[i] ? 1 : 0;
+  }
+  for (let m = 1; m < aspirations.length; m++) {
+    const aspiration = aspirations[m];
+    for (let i = 0; i < n; i++) if (childWealth[i] >= aspiration[i]) reached[i]++;
   }
 }
 
 /** The loop of the one-milestone linear table with its fields in locals: the same results as `solve`, faster. */
 function chooseByTable(
   choice: GrowthTableChoice,
+  members: Uint32Array | null,
   wealth: Float64Array,
   aspiration: Float64Array,
-  childWeight: Float64Array,
-  own: Float64Array,
-  planned: Float64Array,
-  met: Uint8Array,
-  investment: Float64Array | null,
+  { planned, met, investment }: Plans,
 ): void {
   const { coefficients, cells, threshold, low, grossReturn } = choice;
-  const tabulated = choice.childWeight;
-  const n = wealth.length;
-  for (let i = 0; i < n; i++) {
+  const count = members === null ? wealth.length : members.length;
+  for (let e = 0; e < count; e++) {
+    const i = members === null ? e : members[e];
     const y = wealth[i];
-    if (childWeight[i] !== tabulated) {
-      own[0] = aspiration[i];
-      choice.solve(y, own, childWeight[i]);
-      planned[i] = choice.planned;
-      met[i] = choice.met;
-      if (investment !== null) investment[i] = choice.investment;
-      continue;
-    }
-    const q = aspiration[i] / y;
+    const a = aspiration[i];
+    const q = a / y;
     let z: number;
     if (q > threshold) {
       z = low * y;
       met[i] = 0;
     } else {
-      z = growthAt(coefficients, cells, threshold, Math.max(q, 0)) * y;
+      z = growthAt(coefficients, cells, threshold, q > 0 ? q : 0) * y;
+      // a tiny milestone weight puts the peak within rounding of the aspiration
+      if (z < a) z = a;
       met[i] = 1;
     }
     planned[i] = z;
     if (investment !== null) investment[i] = z / grossReturn;
+  }
+}
+
+/** Columns through the kernel, CHUNK households at a time. */
+function chooseByKernel(
+  compiled: Kernel,
+  choice: PlannedChoice,
+  members: Uint32Array | null,
+  wealth: Float64Array,
+  aspirations: readonly Float64Array[],
+  childWeight: Float64Array,
+  { planned, met, investment }: Plans,
+): void {
+  choice.prepare(compiled);
+  const total = members === null ? wealth.length : members.length;
+  for (let first = 0; first < total; first += CHUNK) {
+    const count = Math.min(CHUNK, total - first);
+    if (members === null) {
+      const end = first + count;
+      compiled.wealth.set(wealth.subarray(first, end));
+      compiled.childWeight.set(childWeight.subarray(first, end));
+      for (let m = 0; m < aspirations.length; m++) compiled.aspirations[m].set(aspirations[m].subarray(first, end));
+      compiled.call.choose(count);
+      planned.set(compiled.planned.subarray(0, count), first);
+      met.set(compiled.met.subarray(0, count), first);
+      if (investment !== null) investment.set(compiled.investment.subarray(0, count), first);
+      continue;
+    }
+    for (let e = 0; e < count; e++) {
+      const i = members[first + e];
+      compiled.wealth[e] = wealth[i];
+      compiled.childWeight[e] = childWeight[i];
+      for (let m = 0; m < aspirations.length; m++) compiled.aspirations[m][e] = aspirations[m][i];
+    }
+    compiled.call.choose(count);
+    for (let e = 0; e < count; e++) {
+      const i = members[first + e];
+      planned[i] = compiled.planned[e];
+      met[i] = compiled.met[e];
+      if (investment !== null) investment[i] = compiled.investment[e];
+    }
+  }
+}
+
+function chooseOneByOne(
+  choice: Choice,
+  members: Uint32Array | null,
+  wealth: Float64Array,
+  aspirations: readonly Float64Array[],
+  childWeight: Float64Array,
+  { planned, met, investment }: Plans,
+): void {
+  const own = new Float64Array(aspirations.length);
+  const count = members === null ? wealth.length : members.length;
+  for (let e = 0; e < count; e++) {
+    const i = members === null ? e : members[e];
+    for (let m = 0; m < own.length; m++) own[m] = aspirations[m][i];
+    choice.solve(wealth[i], own, childWeight[i]);
+    planned[i] = choice.planned;
+    met[i] = choice.met;
+    if (investment !== null) investment[i] = choice.investment;
   }
 }

@@ -38,7 +38,8 @@ export class GrowthTableChoice implements Choice {
   /** Polynomial coefficients, lowest first, `stride` a cell, in the position within the cell, 0 … 1. */
   readonly coefficients: Float64Array;
   readonly cells: number;
-  private readonly exact: PlannedChoice;
+  /** Solver for child weights that are not tabulated. */
+  readonly exact: PlannedChoice;
   private readonly sigma: number;
   private readonly pi: number;
   private readonly one: Float64Array;

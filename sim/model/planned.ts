@@ -11,10 +11,14 @@
  * Newton's method kept inside a bracket.
  */
 import { exp, log } from '../../network/elementary.js';
+import type { Kernel } from '../kernel/kernel.js';
 import type { Choice, Peak } from './choice.js';
 import { crra, milestoneUtility } from './preferences.js';
 import { childWealthOf, investmentFor } from './technology.js';
 import type { Preferences, Technology } from './types.js';
+
+/** Share of wealth so small that no household would plan to invest it. */
+const NEGLIGIBLE = 1e-200;
 
 export function plannedChoice(
   technology: Technology,
@@ -72,6 +76,22 @@ export class PlannedChoice implements Choice {
     this.sort(aspirations);
     if (this.threshold) this.solveThreshold(wealth, childWeight);
     else this.solveGainLoss(wealth, childWeight);
+  }
+
+  /** Tells the kernel this problem, for `choose` calls that give the same plans as `solve`. */
+  prepare(compiled: Kernel): void {
+    compiled.weights.set(this.weights);
+    compiled.call.setProblem(
+      this.linear ? 1 : 0,
+      this.threshold ? 1 : 0,
+      this.scale,
+      this.alpha,
+      this.kept,
+      this.sigma,
+      this.eta,
+      this.lambda,
+      this.weights.length,
+    );
   }
 
   objective(wealth: number, z: number, aspirations: ArrayLike<number>, childWeight: number): number {
@@ -133,6 +153,8 @@ export class PlannedChoice implements Choice {
       let kHigh = y;
       if (upper < reach) {
         kHigh = this.linear ? upper / this.scale : investmentFor(this.technology, upper);
+        // so far down that powers would underflow: met by any plan
+        if (!(kHigh > NEGLIGIBLE * y)) continue;
         // still rising at the next milestone: what lies beyond it is better
         if (this.evaluate(kHigh, upper, y, delta, j) < 0) {
           kLow = kHigh;
@@ -140,7 +162,7 @@ export class PlannedChoice implements Choice {
         }
       }
       // a milestone of weight 0 adds no slope, so the peak of this segment may lie below it
-      const bare = lower > 0 && this.pi[j - 1] === 0;
+      const bare = kLow > 0 && this.pi[j - 1] === 0;
       if (!bare || this.evaluate(kLow, lower, y, delta, j) < 0) {
         const k = this.root(kLow, kHigh, y, delta, j);
         let z = this.childWealth(k);
@@ -179,6 +201,7 @@ export class PlannedChoice implements Choice {
       let kHigh = y;
       if (upper < reach) {
         kHigh = this.linear ? upper / this.scale : investmentFor(this.technology, upper);
+        if (!(kHigh > NEGLIGIBLE * y)) continue;
         if (this.evaluate(kHigh, upper, y, weight, 0) < 0) {
           kLow = kHigh;
           continue;
@@ -186,7 +209,7 @@ export class PlannedChoice implements Choice {
       }
       let k: number;
       let z: number;
-      if (lower > 0 && this.evaluate(kLow, lower, y, weight, 0) >= 0) {
+      if (kLow > 0 && this.evaluate(kLow, lower, y, weight, 0) >= 0) {
         k = kLow;
         z = lower;
       } else {

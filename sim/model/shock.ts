@@ -4,6 +4,7 @@
  * Draws are functions of household, place and generation (random/draws.ts): arms of a study share them.
  */
 import { exp } from '../../network/elementary.js';
+import { CHUNK, kernel } from '../kernel/kernel.js';
 import type { Draws } from '../random/draws.js';
 import type { Households, Shock } from './types.js';
 
@@ -26,15 +27,30 @@ export function drawShocks(
     return;
   }
   const shift = -0.5 * s * s;
-  draws.normals('householdShock', generation, out);
   const own = s * Math.sqrt(1 - shock.sharedByPlace);
   const shared = s * Math.sqrt(shock.sharedByPlace);
-  if (shared === 0) {
-    for (let i = 0; i < n; i++) out[i] = exp(own * out[i] + shift);
+  const place = households.place;
+  let common: Float64Array | null = null;
+  if (shared > 0) {
+    common = new Float64Array(households.places);
+    draws.normals('placeShock', generation, common);
+  }
+  const compiled = kernel();
+  if (compiled === null) {
+    draws.normals('householdShock', generation, out);
+    if (common === null) for (let i = 0; i < n; i++) out[i] = exp(own * out[i] + shift);
+    else for (let i = 0; i < n; i++) out[i] = exp(shared * common[place[i]] + own * out[i] + shift);
     return;
   }
-  const common = new Float64Array(households.places);
-  draws.normals('placeShock', generation, common);
-  const place = households.place;
-  for (let i = 0; i < n; i++) out[i] = exp(shared * common[place[i]] + own * out[i] + shift);
+  for (let first = 0; first < n; first += CHUNK) {
+    const count = Math.min(CHUNK, n - first);
+    draws.chunk(compiled, true, 'householdShock', generation, first, count);
+    if (common === null) compiled.call.shocks(count, own, shift);
+    else {
+      const column = compiled.common;
+      for (let i = 0; i < count; i++) column[i] = common[place[first + i]];
+      compiled.call.sharedShocks(count, own, shared, shift);
+    }
+    out.set(count === CHUNK ? compiled.draws : compiled.draws.subarray(0, count), first);
+  }
 }

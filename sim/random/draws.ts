@@ -5,6 +5,7 @@
  * number of threads, and one household's history can be drawn again alone. One call of the generator gives 128 bits
  * and serves the two households 2h and 2h + 1. Sequential work (drawing a graph) uses stream.ts instead.
  */
+import { CHUNK, type Kernel, kernel } from '../kernel/kernel.js';
 import { normalQuantile } from './normal.js';
 import { philox } from './philox.js';
 
@@ -73,6 +74,36 @@ export class Draws {
 
   /** Fills out[i] with household i's uniform on (0, 1). Cost O(n), no allocation. */
   uniforms(purpose: Purpose, generation: number, out: Float64Array): void {
+    this.fill(false, purpose, generation, out);
+  }
+
+  /** Fills out[i] with household i's standard normal: the quantile of the uniform of the same arguments. */
+  normals(purpose: Purpose, generation: number, out: Float64Array): void {
+    this.fill(true, purpose, generation, out);
+  }
+
+  private fill(normals: boolean, purpose: Purpose, generation: number, out: Float64Array): void {
+    const compiled = kernel();
+    const n = out.length;
+    if (compiled === null) {
+      this.fillPlainly(normals, purpose, generation, out);
+      return;
+    }
+    for (let first = 0; first < n; first += CHUNK) {
+      const count = Math.min(CHUNK, n - first);
+      this.chunk(compiled, normals, purpose, generation, first, count);
+      out.set(count === CHUNK ? compiled.draws : compiled.draws.subarray(0, count), first);
+    }
+  }
+
+  /** Leaves the draws of households first … first + count − 1 in the kernel's `draws`; `first` even, count ≤ CHUNK. */
+  chunk(compiled: Kernel, normals: boolean, purpose: Purpose, generation: number, first: number, count: number): void {
+    const { low, high, replicate } = this;
+    compiled.call.draw(normals ? 1 : 0, first, count, generation, replicate, PURPOSES[purpose], low, high);
+  }
+
+  /** The same draws without the kernel. */
+  fillPlainly(normals: boolean, purpose: Purpose, generation: number, out: Float64Array): void {
     const { low, high, replicate, words } = this;
     const use = PURPOSES[purpose];
     const n = out.length;
@@ -81,18 +112,7 @@ export class Draws {
       out[i] = toUniform(words[0], words[1]);
       if (i + 1 < n) out[i + 1] = toUniform(words[2], words[3]);
     }
-  }
-
-  /** Fills out[i] with household i's standard normal: the quantile of the uniform of the same arguments. */
-  normals(purpose: Purpose, generation: number, out: Float64Array): void {
-    const { low, high, replicate, words } = this;
-    const use = PURPOSES[purpose];
-    const n = out.length;
-    for (let i = 0; i < n; i += 2) {
-      philox(i >>> 1, generation, replicate, use, low, high, words);
-      out[i] = normalQuantile(toUniform(words[0], words[1]));
-      if (i + 1 < n) out[i + 1] = normalQuantile(toUniform(words[2], words[3]));
-    }
+    if (normals) for (let i = 0; i < n; i++) out[i] = normalQuantile(out[i]);
   }
 
   /** One household's uniform, the same bits as `uniforms` gives it. */

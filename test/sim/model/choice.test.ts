@@ -102,7 +102,7 @@ describe('the choice agrees with brute force', () => {
   test('threshold milestones, expected risk', () => {
     fc.assert(
       fc.property(problems('threshold', 'expected'), (problem) => checkAgainstBruteForce(problem, 40)),
-      { numRuns: 12, seed: 3, endOnFailure: true },
+      { numRuns: 8, seed: 3, endOnFailure: true },
     );
   });
   test('gain-loss milestones, expected risk', () => {

@@ -1,0 +1,509 @@
+/**
+ * The engine's inner loops in AssemblyScript, compiled to WebAssembly: draws, shocks and the planned choice.
+ *
+ * Operation by operation the same as random/philox.ts, random/draws.ts, random/normal.ts, network/elementary.ts and
+ * model/planned.ts, so the bits are the same (tested); it exists for speed, since 64-bit products and register
+ * arithmetic are two to five times as fast here. It works on columns of at most CHUNK households at fixed addresses of
+ * its memory. Source of bytes.ts: run compile.mjs after any change.
+ */
+
+// addresses in bytes; ../kernel.ts repeats them
+const LOG_TABLE: usize = 1024;
+const EXP_TABLE: usize = 5184;
+const POWER_OF_TWO: usize = 7232;
+const WEIGHT: usize = 23616;
+const SORTED_A: usize = 23648;
+const SORTED_PI: usize = 23680;
+const CHUNK: usize = 1024;
+const COLUMNS: usize = 24576;
+const COLUMN: usize = CHUNK * 8;
+const WEALTH: usize = COLUMNS;
+const CHILD_WEIGHT: usize = COLUMNS + COLUMN;
+const PLANNED: usize = COLUMNS + 2 * COLUMN;
+const INVESTMENT: usize = COLUMNS + 3 * COLUMN;
+const ASPIRATION: usize = COLUMNS + 4 * COLUMN;
+const MET: usize = COLUMNS + 8 * COLUMN;
+/** Draws and shocks use the same space. */
+const DRAW: usize = COLUMNS;
+const COMMON: usize = COLUMNS + COLUMN;
+
+const ROUND: f64 = 6755399441055744.0;
+let LN2_HIGH: f64 = 0;
+let LN2_LOW: f64 = 0;
+let STEP_HIGH: f64 = 0;
+let STEP_LOW: f64 = 0;
+let PER_STEP: f64 = 0;
+
+export function setConstants(ln2High: f64, ln2Low: f64, stepHigh: f64, stepLow: f64, perStep: f64): void {
+  LN2_HIGH = ln2High;
+  LN2_LOW = ln2Low;
+  STEP_HIGH = stepHigh;
+  STEP_LOW = stepLow;
+  PER_STEP = perStep;
+}
+
+export function log(x: f64): f64 {
+  let bits = reinterpret<u64>(x);
+  let high = <i32>(bits >> 32);
+  let k: i32 = -1023;
+  if (high < 0x100000 || high >= 0x7ff00000) {
+    if (!(x > 0)) return x == 0 ? -Infinity : NaN;
+    if (x == Infinity) return Infinity;
+    x *= 18014398509481984.0;
+    bits = reinterpret<u64>(x);
+    high = <i32>(bits >> 32);
+    k -= 54;
+  }
+  k += high >> 20;
+  const cell = ((high & 0xfffff) + 0x1000) >> 13;
+  // the mantissa in [1, 2): the same number as the scaling by a power of two elsewhere
+  const m = reinterpret<f64>((bits & 0xfffffffffffff) | 0x3ff0000000000000);
+  if (cell >= 54) k++;
+  const at = LOG_TABLE + (<usize>cell << 5);
+  const c = load<f64>(at);
+  const inverse = load<f64>(at, 8);
+  const d = m - c;
+  const r = d * inverse;
+  const rHigh = r + 1.5 - 1.5;
+  const rLow = (d - rHigh * c) * inverse;
+  const r2 = r * r;
+  const series =
+    r2 *
+    (-0.5 +
+      r * 0.3333333333333333 +
+      r2 * (-0.25 + r * 0.2 + r2 * (-0.16666666666666666 + r * 0.14285714285714285 - r2 * 0.125)));
+  const w = <f64>k * LN2_HIGH + load<f64>(at, 16);
+  const sum = w + rHigh;
+  return sum + (w - sum + rHigh + (<f64>k * LN2_LOW + load<f64>(at, 24) + rLow + series));
+}
+
+export function exp(x: f64): f64 {
+  const inside = x > -708 && x < 709;
+  if (!inside) {
+    if (isNaN(x)) return x;
+    if (x > 709.782712893384) return Infinity;
+    if (x < -745.1332191019412) return 0;
+  }
+  const n = x * PER_STEP + ROUND - ROUND;
+  const whole = <i32>n;
+  const at = EXP_TABLE + (<usize>(whole & 127) << 4);
+  const r = x - n * STEP_HIGH - n * STEP_LOW;
+  const r2 = r * r;
+  const p = r + r2 * (0.5 + r * 0.16666666666666666 + r2 * (0.041666666666666664 + r * 0.008333333333333333));
+  const t = load<f64>(at);
+  const mantissa = t + (t * p + load<f64>(at, 8));
+  const k = whole >> 7;
+  if (inside) return mantissa * load<f64>(POWER_OF_TWO + (<usize>(k + 1023) << 3));
+  const first = k > 0 ? 1000 : -1000;
+  return (
+    mantissa *
+    load<f64>(POWER_OF_TWO + (<usize>(first + 1023) << 3)) *
+    load<f64>(POWER_OF_TWO + (<usize>(k - first + 1023) << 3))
+  );
+}
+
+function pow(x: f64, y: f64): f64 {
+  if (y == 0) return 1;
+  if (y == 1) return x;
+  if (!(x > 0 && x < Infinity)) {
+    if (x == 0) return y > 0 ? 0 : Infinity;
+    if (x == Infinity) return y > 0 ? Infinity : 0;
+    return NaN;
+  }
+  return exp(y * log(x));
+}
+
+function tailQuantile(q: f64, u: f64): f64 {
+  let r = sqrt(-log(q < 0 ? u : 1 - u));
+  let x: f64;
+  if (r <= 5) {
+    r -= 1.6;
+    x =
+      (((((((r * 7.7454501427834140764e-4 + 0.0227238449892691845833) * r + 0.24178072517745061177) * r +
+        1.27045825245236838258) *
+        r +
+        3.64784832476320460504) *
+        r +
+        5.7694972214606914055) *
+        r +
+        4.6303378461565452959) *
+        r +
+        1.42343711074968357734) /
+      (((((((r * 1.05075007164441684324e-9 + 5.475938084995344946e-4) * r + 0.0151986665636164571966) * r +
+        0.14810397642748007459) *
+        r +
+        0.68976733498510000455) *
+        r +
+        1.6763848301838038494) *
+        r +
+        2.05319162663775882187) *
+        r +
+        1);
+  } else {
+    r -= 5;
+    x =
+      (((((((r * 2.01033439929228813265e-7 + 2.71155556874348757815e-5) * r + 0.0012426609473880784386) * r +
+        0.026532189526576123093) *
+        r +
+        0.29656057182850489123) *
+        r +
+        1.7848265399172913358) *
+        r +
+        5.4637849111641143699) *
+        r +
+        6.6579046435011037772) /
+      (((((((r * 2.04426310338993978564e-15 + 1.4215117583164458887e-7) * r + 1.8463183175100546818e-5) * r +
+        7.868691311456132591e-4) *
+        r +
+        0.0148753612908506148525) *
+        r +
+        0.13692988092273580531) *
+        r +
+        0.59983220655588793769) *
+        r +
+        1);
+  }
+  return q < 0 ? -x : x;
+}
+
+function normalQuantile(u: f64): f64 {
+  const q = u - 0.5;
+  if (q <= 0.425 && q >= -0.425) {
+    const r = 0.180625 - q * q;
+    return (
+      (q *
+        (((((((r * 2509.0809287301226727 + 33430.575583588128105) * r + 67265.770927008700853) * r +
+          45921.953931549871457) *
+          r +
+          13731.693765509461125) *
+          r +
+          1971.5909503065514427) *
+          r +
+          133.14166789178437745) *
+          r +
+          3.387132872796366608)) /
+      (((((((r * 5226.495278852545925 + 28729.085735721942674) * r + 39307.89580009271061) * r +
+        21213.794301586595867) *
+        r +
+        5394.1960214247511077) *
+        r +
+        687.1870074920579083) *
+        r +
+        42.313330701600911252) *
+        r +
+        1)
+    );
+  }
+  return tailQuantile(q, u);
+}
+
+function toUniform(high: u32, low: u32): f64 {
+  return (<f64>(high >>> 6) * 67108864 + <f64>(low >>> 6) + 0.5) * 2.220446049250313e-16;
+}
+
+/** DRAW[i] = uniform (or normal) of household first + i, for an even `first`; an odd `count` writes one more. */
+export function draw(
+  normals: bool,
+  first: u32,
+  count: i32,
+  generation: u32,
+  replicate: u32,
+  purpose: u32,
+  low: u32,
+  high: u32,
+): void {
+  for (let i = 0; i < count; i += 2) {
+    let c0: u32 = (first + <u32>i) >>> 1;
+    let c1 = generation;
+    let c2 = replicate;
+    let c3 = purpose;
+    let k0 = low;
+    let k1 = high;
+    for (let round = 0; round < 10; round++) {
+      const p0 = <u64>c0 * 0xd2511f53;
+      const p1 = <u64>c2 * 0xcd9e8d57;
+      c0 = <u32>(p1 >> 32) ^ c1 ^ k0;
+      c1 = <u32>p1;
+      c2 = <u32>(p0 >> 32) ^ c3 ^ k1;
+      c3 = <u32>p0;
+      k0 += 0x9e3779b9;
+      k1 += 0xbb67ae85;
+    }
+    const u = toUniform(c0, c1);
+    const v = toUniform(c2, c3);
+    const at = DRAW + (<usize>i << 3);
+    store<f64>(at, normals ? normalQuantile(u) : u);
+    store<f64>(at, normals ? normalQuantile(v) : v, 8);
+  }
+}
+
+/** DRAW[i] = exp(own·DRAW[i] + shift). */
+export function shocks(count: i32, own: f64, shift: f64): void {
+  for (let i = 0; i < count; i++) {
+    const at = DRAW + (<usize>i << 3);
+    store<f64>(at, exp(own * load<f64>(at) + shift));
+  }
+}
+
+/** DRAW[i] = exp(shared·COMMON[i] + own·DRAW[i] + shift). */
+export function sharedShocks(count: i32, own: f64, shared: f64, shift: f64): void {
+  for (let i = 0; i < count; i++) {
+    const at = DRAW + (<usize>i << 3);
+    store<f64>(at, exp(shared * load<f64>(COMMON + (<usize>i << 3)) + own * load<f64>(at) + shift));
+  }
+}
+
+let linear: bool = false;
+let threshold: bool = false;
+let scale: f64 = 0;
+let alpha: f64 = 0;
+let kept: f64 = 0;
+let sigma: f64 = 0;
+let eta: f64 = 0;
+let lambda: f64 = 0;
+let milestones: i32 = 0;
+
+export function setProblem(
+  isLinear: bool,
+  isThreshold: bool,
+  scale_: f64,
+  alpha_: f64,
+  kept_: f64,
+  sigma_: f64,
+  eta_: f64,
+  lambda_: f64,
+  milestones_: i32,
+): void {
+  linear = isLinear;
+  threshold = isThreshold;
+  scale = scale_;
+  alpha = alpha_;
+  kept = kept_;
+  sigma = sigma_;
+  eta = eta_;
+  lambda = lambda_;
+  milestones = milestones_;
+}
+
+// the answer of one household, and φ′ of the last evaluation
+let planned: f64 = 0;
+let investment: f64 = 0;
+let met: i32 = 0;
+let slope: f64 = 0;
+
+@inline
+function a(m: i32): f64 {
+  return load<f64>(SORTED_A + (<usize>m << 3));
+}
+
+@inline
+function pi(m: i32): f64 {
+  return load<f64>(SORTED_PI + (<usize>m << 3));
+}
+
+/** Choices of the households in WEALTH, CHILD_WEIGHT and ASPIRATION; fills PLANNED, INVESTMENT and MET. */
+export function choose(count: i32): void {
+  for (let i = 0; i < count; i++) {
+    const at = <usize>i << 3;
+    for (let m = 0; m < milestones; m++) {
+      const value = load<f64>(ASPIRATION + <usize>m * COLUMN + at);
+      let place = m;
+      while (place > 0 && a(place - 1) > value) {
+        store<f64>(SORTED_A + (<usize>place << 3), a(place - 1));
+        store<f64>(SORTED_PI + (<usize>place << 3), pi(place - 1));
+        place--;
+      }
+      store<f64>(SORTED_A + (<usize>place << 3), value);
+      store<f64>(SORTED_PI + (<usize>place << 3), load<f64>(WEIGHT + (<usize>m << 3)));
+    }
+    const y = load<f64>(WEALTH + at);
+    const delta = load<f64>(CHILD_WEIGHT + at);
+    if (threshold) solveThreshold(y, delta);
+    else solveGainLoss(y, delta);
+    store<f64>(PLANNED + at, planned);
+    store<f64>(INVESTMENT + at, investment);
+    store<u8>(MET + <usize>i, <u8>met);
+  }
+}
+
+function childWealth(k: f64): f64 {
+  return linear ? scale * k : scale * pow(k, alpha) + kept * k;
+}
+
+function investmentFor(z: f64): f64 {
+  if (!(z > 0)) return 0;
+  if (linear) return z / scale;
+  if (kept == 0) return pow(z / scale, 1 / alpha);
+  let k = min(pow((0.5 * z) / scale, 1 / alpha), (0.5 * z) / kept);
+  for (let step = 0; step < 200; step++) {
+    const power = scale * pow(k, alpha);
+    const move = (z - power - kept * k) / ((alpha * power) / k + kept);
+    k += move;
+    if (!(abs(move) > 1e-9 * k)) break;
+  }
+  return k;
+}
+
+function crra(x: f64): f64 {
+  if (sigma == 1) return log(x);
+  const power = 1 - sigma;
+  if (x == 0) return power > 0 ? 0 : -Infinity;
+  return exp(power * log(x)) / power;
+}
+
+function utilityAt(c: f64, z: f64, delta: f64, count: i32): f64 {
+  let value = crra(z);
+  const power = 1 - eta;
+  for (let m = 0; m < count; m++) {
+    const above = z - a(m);
+    if (above > 0) value += (pi(m) * exp(power * log(above))) / power;
+  }
+  return crra(c) + delta * value;
+}
+
+function evaluate(k: f64, z: f64, y: f64, delta: f64, count: i32): f64 {
+  let marginal = scale;
+  let bend: f64 = 0;
+  if (!linear) {
+    const power = (alpha * (z - kept * k)) / k;
+    marginal = power + kept;
+    bend = ((alpha - 1) * power) / (k * marginal);
+  }
+  let s = exp(-sigma * log(z));
+  let fall = (sigma * s) / z;
+  for (let m = 0; m < count; m++) {
+    const above = z - a(m);
+    if (!(above > 0)) {
+      if (pi(m) == 0) continue;
+      slope = Infinity;
+      return k - y;
+    }
+    const term = pi(m) * exp(-eta * log(above));
+    s += term;
+    fall += (eta * term) / above;
+  }
+  const p = exp(log(delta * marginal * s) / -sigma);
+  slope = 1 - (p / sigma) * (bend - (marginal * fall) / s);
+  return p - (y - k);
+}
+
+function start(low: f64, high: f64, y: f64, delta: f64, count: i32): f64 {
+  if (linear && eta == sigma) {
+    const kappa = exp(log(delta * scale) / sigma);
+    let k = y / (1 + scale / kappa);
+    for (let m = 0; m < count; m++) {
+      if (pi(m) == 0) continue;
+      const kappaM = kappa * exp(log(pi(m)) / sigma);
+      const alone = (a(m) + kappaM * y) / (scale + kappaM);
+      if (alone > k) k = alone;
+    }
+    if (k > low && k < high) return k;
+  }
+  return 0.5 * (low + high);
+}
+
+function root(low: f64, high: f64, y: f64, delta: f64, count: i32): f64 {
+  const from = low;
+  let k = start(low, high, y, delta, count);
+  let lastMove = high - low;
+  for (let step = 0; step < 200; step++) {
+    const value = evaluate(k, childWealth(k), y, delta, count);
+    if (value == 0) return k;
+    if (value < 0) low = k;
+    else high = k;
+    let next = k - value / slope;
+    let move = next - k;
+    const size = abs(move);
+    const room = min(k - from, y - k);
+    if (size <= 1e-8 * room && next > low && next < high) return next;
+    if (!(next > low && next < high) || size > 0.7 * lastMove) {
+      next = 0.5 * (low + high);
+      move = next - k;
+    }
+    lastMove = abs(move);
+    if (next == k || next <= low || next >= high) return k;
+    k = next;
+  }
+  return k;
+}
+
+function solveThreshold(y: f64, delta: f64): void {
+  const M = milestones;
+  const reach = childWealth(y);
+  let best = -Infinity;
+  let kLow: f64 = 0;
+  for (let j = 0; j <= M; j++) {
+    const lower = j > 0 ? a(j - 1) : 0;
+    const upper = j < M ? a(j) : Infinity;
+    if (lower >= reach) break;
+    if (!(upper > lower) || upper <= 0) continue;
+    let kHigh = y;
+    if (upper < reach) {
+      kHigh = investmentFor(upper);
+      if (!(kHigh > 1e-200 * y)) continue;
+      if (evaluate(kHigh, upper, y, delta, j) < 0) {
+        kLow = kHigh;
+        continue;
+      }
+    }
+    const bare = kLow > 0 && pi(j - 1) == 0;
+    if (!bare || evaluate(kLow, lower, y, delta, j) < 0) {
+      const k = root(kLow, kHigh, y, delta, j);
+      let z = childWealth(k);
+      if (z < lower) z = lower;
+      let count = j;
+      if (z >= upper) {
+        z = upper;
+        while (count < M && a(count) <= z) count++;
+      }
+      const utility = utilityAt(y - k, z, delta, j);
+      if (utility >= best) {
+        best = utility;
+        planned = z;
+        investment = k;
+        met = count;
+      }
+    }
+    kLow = kHigh;
+  }
+}
+
+function solveGainLoss(y: f64, delta: f64): void {
+  const M = milestones;
+  const reach = childWealth(y);
+  let kLow: f64 = 0;
+  for (let j = 0; j <= M; j++) {
+    const lower = j > 0 ? a(j - 1) : 0;
+    const upper = j < M ? a(j) : Infinity;
+    if (j < M && upper <= 0) continue;
+    let factor: f64 = 1;
+    for (let m = 0; m < M; m++) factor += m < j ? pi(m) : lambda * pi(m);
+    const weight = delta * factor;
+    let kHigh = y;
+    if (upper < reach) {
+      kHigh = investmentFor(upper);
+      if (!(kHigh > 1e-200 * y)) continue;
+      if (evaluate(kHigh, upper, y, weight, 0) < 0) {
+        kLow = kHigh;
+        continue;
+      }
+    }
+    let k: f64;
+    let z: f64;
+    if (kLow > 0 && evaluate(kLow, lower, y, weight, 0) >= 0) {
+      k = kLow;
+      z = lower;
+    } else {
+      k = root(kLow, kHigh, y, weight, 0);
+      z = childWealth(k);
+      if (z < lower) z = lower;
+      if (z > upper) z = upper;
+    }
+    let count = 0;
+    while (count < M && a(count) <= z) count++;
+    planned = z;
+    investment = k;
+    met = count;
+    return;
+  }
+}

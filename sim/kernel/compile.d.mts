@@ -1,0 +1,2 @@
+/** Compiles assembly/kernel.ts; see compile.mjs. */
+export function compile(): Promise<Uint8Array>;
