@@ -72,7 +72,7 @@ export const PROFILE_AT = Float64Array.from({ length: 19 }, (_, k) => (k + 1) / 
 const SHORTEST = 4;
 /** A spread or level that changes by less than this a generation stands still (relative, or in log points). */
 const STILL = 0.01;
-/** Scatter around a straight line, relative to the level, that is taken for luck rather than movement. */
+/** Scatter around a straight line, and drift over the window, relative to the level, that luck may account for. */
 const LUCK = 0.05;
 /** A spread has all but gone when this share of it is left, of the start's, or of today's once the fall has run out. */
 const LEFT_OVER = 0.05;
@@ -162,9 +162,12 @@ export function classifyRegime(series: readonly RegimeObservation[]): RegimeVerd
     return verdict('undecided', { moreGenerations: Math.max(1, 3 * LONG - last) });
   }
 
+  const drift = Math.abs(spreadLine.slope);
   const stands =
-    Math.abs(spreadLine.slope) <= STILL * meanSpread ||
-    (Math.abs(spreadLine.slope) <= 2 * spreadLine.se && spreadLine.scatter <= LUCK * meanSpread);
+    drift <= STILL * meanSpread ||
+    (drift <= 2 * spreadLine.se &&
+      drift * (window.length - 1) <= LUCK * meanSpread &&
+      spreadLine.scatter <= LUCK * meanSpread);
   if (stands) {
     // everyone may still be growing together: then the spread has settled, the distribution has not
     if (Math.abs(evidence.levelTrend) > STILL || !agreed) return verdict('settled');
