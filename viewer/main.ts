@@ -95,18 +95,18 @@ function runFirst(yaml: string, files: Map<string, Uint8Array>, linked: boolean)
           if (app === null) wait(`Running the study: ${doing} …`);
           else void app.then((a) => a.progress(share, doing));
         },
-        arrived: (source, made, whole) => {
+        arrived: (source, _, whole) => {
           if (app === null) {
             app = show(source, origin).then((a) => {
               if (!whole) a.adopt(run);
-              else a.finished(made);
+              else a.finished();
               return a;
             });
             app.then(() => done(), failed);
           } else {
             void app.then(async (a) => {
               await a.open(source, origin, true);
-              if (whole) a.finished(made);
+              if (whole) a.finished();
             });
           }
         },

@@ -18,6 +18,7 @@ import { CAUTION, picture } from '../field/picture.js';
 import type { ArmScene, Scene, ShownPocket } from '../field/scene.js';
 import { reducedMotion, Stage } from '../field/stage.js';
 import { type Run, startRun } from '../run/run.js';
+import { dataOffers, partialNote } from '../save/offers.js';
 import { openSheet, type SheetState, studySheet } from '../sheet/sheet.js';
 import { strip } from '../strip/strip.js';
 import { guide } from './guide.js';
@@ -63,10 +64,8 @@ export class App {
   #running: { share: number; doing: string } | null = null;
   #message: { says: string; wrong: boolean } | null = null;
   #sheet: SheetState | null = null;
-  #saving: { doing: string } | null = null;
+  #saving: { doing: string; trouble: string } | null = null;
   #guide: { step: number; only: boolean } | null = null;
-  /** Files of the study run in the page, for saving. */
-  #made: ReadonlyMap<string, Uint8Array<ArrayBuffer>> | null = null;
 
   constructor(mount: HTMLElement, source: Source, origin: Origin) {
     this.mount = mount;
@@ -301,11 +300,10 @@ export class App {
       { yaml, files },
       {
         progress: (share, doing) => this.progress(share, doing),
-        arrived: (source, made, whole) => {
+        arrived: (source, _, whole) => {
           const again = !first;
           first = false;
-          if (whole) this.finished(made);
-          else this.#made = null;
+          if (whole) this.finished();
           void this.open(source, origin, again || linked).then(() => {
             if (!again && !linked) this.#caution();
           });
@@ -331,11 +329,10 @@ export class App {
     this.render();
   }
 
-  /** The run is over and its files are here. */
-  finished(made: ReadonlyMap<string, Uint8Array<ArrayBuffer>>): void {
+  /** The run is over and its results are here. */
+  finished(): void {
     this.#running = null;
     this.#run = null;
-    this.#made = made;
     this.render();
   }
 
@@ -419,7 +416,7 @@ export class App {
       this.render();
     },
     save: () => {
-      this.#saving = { doing: '' };
+      this.#saving = { doing: '', trouble: '' };
       this.render();
     },
     find: (said) => this.#find(said),
@@ -481,7 +478,11 @@ export class App {
                   close('sheet')();
                   this.run(yaml, files);
                 },
-                save: (yaml) => download(`${fileName(this.source.info.title)}.yaml`, yaml),
+                save: (yaml) =>
+                  download(
+                    `${fileName(/^study:\s*["']?(.+?)["']?\s*(?:#.*)?$/m.exec(yaml)?.[1] ?? 'study')}.yaml`,
+                    yaml,
+                  ),
                 changed: () => {},
               },
             )}</dialog>`
@@ -490,7 +491,12 @@ export class App {
         this.#saving === null
           ? nothing
           : html`<dialog class="save" aria-label="Save" @close=${close('saving')} @cancel=${close('saving')}>${saveSheet(
-              { offers: this.#offers(), link: this.origin.linked ? location.href : null, doing: this.#saving.doing },
+              {
+                offers: this.#offers(),
+                link: this.origin.linked ? location.href : null,
+                note: partialNote(this.source),
+                ...this.#saving,
+              },
               close('saving'),
               () => void navigator.clipboard?.writeText(location.href),
             )}</dialog>`
@@ -531,21 +537,16 @@ export class App {
     const { info } = source;
     const stem = fileName(info.title);
     const doing = (says: string, act: () => Promise<void>) => async (): Promise<void> => {
-      this.#saving = { doing: says };
+      this.#saving = { doing: says, trouble: '' };
       this.render();
       try {
         await act();
         this.#saving = null;
       } catch (error) {
-        this.#saving = { doing: error instanceof Error ? error.message : String(error) };
+        this.#saving = { doing: '', trouble: error instanceof Error ? error.message : String(error) };
       }
       this.render();
     };
-    const file = (name: string, says: string, from: string): SaveOffer => ({
-      name,
-      says,
-      act: doing(`Saving ${from} …`, async () => download(`${stem}-${from}`, await source.file(from))),
-    });
     return [
       {
         name: 'Picture (PNG)',
@@ -554,31 +555,14 @@ export class App {
           download(`${stem}-generation-${this.view.generation}.png`, await this.picture()),
         ),
       },
-      {
-        name: 'Panel (CSV)',
-        says: 'every household in every generation, for any statistics program',
-        act: doing('Writing the panel as CSV …', async () => {
-          const { panelCsv } = await import('../data/panel-csv.js');
-          download(`${stem}-panel.csv`, await panelCsv(source));
+      ...dataOffers(source).map((offer) => ({
+        name: offer.name,
+        says: offer.says,
+        act: doing(offer.doing, async () => {
+          const { name, content } = await offer.make();
+          download(name, content);
         }),
-      },
-      file('Panel (Parquet)', 'the same, compact', 'panel.parquet'),
-      file('Ties', 'who has ties to whom, and when', 'ties.parquet'),
-      {
-        name: 'Results folder (ZIP)',
-        says: 'all tables, codebook and manifest, as the command line writes them',
-        act: doing('Packing the folder …', async () => {
-          const { zipFiles } = await import('../../sim/results/bundle.js');
-          const files = new Map<string, Uint8Array>(this.#made ?? []);
-          if (this.#made === null) for (const name of await source.files()) files.set(name, await source.file(name));
-          download(`${stem}.zip`, zipFiles(stem, files));
-        }),
-      },
-      {
-        name: 'Study (YAML)',
-        says: 'every setting written out: running it again gives the same bytes',
-        act: doing('Saving the study …', async () => download(`${stem}.yaml`, info.yaml)),
-      },
+      })),
     ];
   }
 

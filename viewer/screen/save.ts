@@ -12,7 +12,12 @@ export interface SaveOffer {
 export interface SaveState {
   readonly offers: readonly SaveOffer[];
   readonly link: string | null;
+  /** What is being made, or ''. */
   readonly doing: string;
+  /** Why the last one could not be made, or ''. */
+  readonly trouble: string;
+  /** What holds for all of them, or null. */
+  readonly note: string | null;
 }
 
 export function saveSheet(state: SaveState, close: () => void, copy: () => void): TemplateResult {
@@ -30,6 +35,13 @@ export function saveSheet(state: SaveState, close: () => void, copy: () => void)
         : html`<p class="link-line"><label>Link to this view <input readonly .value=${state.link} @focus=${(e: Event) => (e.target as HTMLInputElement).select()} /></label>
             <button class="button" @click=${copy}>Copy</button></p>`
     }
-    <p class="note" role="status">${state.doing === '' ? 'Any figure of the drawer is saved by the svg beside its name.' : state.doing}</p>
+    ${state.note === null ? nothing : html`<p class="note">${state.note}</p>`}
+    <p class=${state.trouble === '' ? 'note' : 'message wrong'} role="status">${
+      state.trouble !== ''
+        ? state.trouble
+        : state.doing !== ''
+          ? state.doing
+          : 'Any figure of the drawer is saved by the svg beside its name.'
+    }</p>
   `;
 }
