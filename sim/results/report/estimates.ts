@@ -5,7 +5,7 @@
  */
 import { type CoefficientStrip, coefficientsFigure } from '../figures/coefficients.js';
 import { safe } from '../figures/figure.js';
-import { count, fixed, list, NONE, num, p, pct, plate, pValue, table } from './words.js';
+import { count, fixed, list, NONE, num, p, pct, plate, pValue, sentence, table } from './words.js';
 
 /** The constant as results name it. */
 const CONSTANT = '(const)';
@@ -96,7 +96,7 @@ export function estimatesSection(file: EstimatesFile, arms: readonly string[]): 
       ? 'Each is run in every replicate. The dot is the mean over replicates, filled where the line leaves zero out; the line ' +
         'spans where 95 % of single replicates would fall (mean ± 1.96 standard deviations). '
       : 'The dot is the estimate, filled where its interval leaves zero out. ') +
-    'An upright bar marks the true value where it is known. A coefficient is the change in the outcome that goes with one ' +
+    'In the tables, sd is the spread over replicates, s.e. is the standard error a single replicate would report, and “not 0 in” the share of replicates that would call the coefficient different from zero at 5 %. An upright bar marks the true value where it is known. A coefficient is the change in the outcome that goes with one ' +
     'more unit of the term, the other terms held fixed: it is an effect only where the design makes it one.';
   return (
     p(intro) +
@@ -120,7 +120,7 @@ function one(summaries: readonly Summary[], regressions: readonly Regression[], 
   const effects = Object.keys(first.absorbed);
   const clusters = Object.keys(first.clusters_by);
   const about =
-    `${outcome} by ${METHODS[method]}` +
+    `${sentence(termWords(outcome))} by ${METHODS[method]}` +
     `${effects.length > 0 ? `, comparing within ${list(effects)}` : ''}` +
     `${clusters.length > 0 ? `, errors clustered by ${list(clusters)}` : ''}; ` +
     `${count(Math.round(summaries[0].mean_nobs), 'row')}${replicates > 1 ? ` on average, ${count(replicates, 'replicate')}` : ''}` +
@@ -130,7 +130,7 @@ function one(summaries: readonly Summary[], regressions: readonly Regression[], 
   const marks = pooled ? [summaries[0].arm ?? ''] : arms;
   const strips = shown.map((term): CoefficientStrip => {
     return {
-      term,
+      term: termWords(term),
       rows: summaries.flatMap((summary) => {
         const found = summary.terms.find((each) => each.term === term);
         if (found === undefined) return [];
@@ -158,7 +158,7 @@ function one(summaries: readonly Summary[], regressions: readonly Regression[], 
               .map((s) => `${s.term}: ${s.rows.map((r) => `${r.arm} ${num(r.estimate)}`.trim()).join(', ')}`)
               .join('; '),
           ),
-          about[0].toUpperCase() + about.slice(1),
+          about,
         );
   return (
     `<article class="estimate"><h3>${safe(name)}</h3><div class="beside">${figure}<div>` +
@@ -168,41 +168,59 @@ function one(summaries: readonly Summary[], regressions: readonly Regression[], 
   );
 }
 
+/** A term as a reader says it: `square(log_wealth)` is the square of log wealth. */
+export function termWords(term: string): string {
+  const square = /^square\((.*)\)$/.exec(term);
+  if (square !== null) return `${termWords(square[1])}, squared`;
+  return term.replaceAll('_', ' ').replace(/^(\w+)=(.*)$/, '$1: $2');
+}
+
+/** Rows in the order of the terms, the constant left out. */
+function byTerm<T extends { readonly term: string }>(
+  groups: readonly { readonly arm: string; readonly terms: readonly T[] }[],
+): { readonly arm: string; readonly term: T }[] {
+  const names = [...new Set(groups.flatMap((group) => group.terms.map((term) => term.term)))];
+  return names
+    .filter((name) => name !== CONSTANT)
+    .flatMap((name) =>
+      groups.flatMap(({ arm, terms }) => terms.filter((each) => each.term === name).map((term) => ({ arm, term }))),
+    );
+}
+
 function summaryTable(name: string, summaries: readonly Summary[], pooled: boolean): string {
   const known = summaries.some((summary) => summary.terms.some((term) => term.truth !== null));
   const effects = summaries.some((summary) => (summary.marginal_effects?.length ?? 0) > 0);
-  const head = ['term', ...(pooled ? [] : ['arm']), 'mean', 'sd', 'mean s.e.', 'not 0 in'];
-  const rows = summaries.flatMap((summary) =>
-    summary.terms.map((term) => [
-      term.term,
-      ...(pooled ? [] : [summary.arm ?? NONE]),
-      num(term.mean),
-      num(term.sd),
-      num(term.mean_std_error),
-      pct(term.rejects_zero),
-      ...(effects ? [num(summary.marginal_effects?.find((effect) => effect.term === term.term)?.mean ?? null)] : []),
-      ...(known ? [num(term.truth), pct(term.coverage)] : []),
-    ]),
-  );
+  const head = ['term', ...(pooled ? [] : ['arm']), 'mean', 'sd', 's.e.', 'not 0 in'];
+  const effectOf = (arm: string, term: string): number | null =>
+    summaries.find((summary) => (summary.arm ?? NONE) === arm)?.marginal_effects?.find((effect) => effect.term === term)
+      ?.mean ?? null;
+  const rows = byTerm(summaries.map(({ arm, terms }) => ({ arm: arm ?? NONE, terms }))).map(({ arm, term }) => [
+    termWords(term.term),
+    ...(pooled ? [] : [arm]),
+    num(term.mean),
+    num(term.sd),
+    num(term.mean_std_error),
+    pct(term.rejects_zero),
+    ...(effects ? [num(effectOf(arm, term.term))] : []),
+    ...(known ? [num(term.truth), pct(term.coverage)] : []),
+  ]);
   return table(
     `${name}, over replicates`,
-    [...head, ...(effects ? ['change in probability'] : []), ...(known ? ['truth', 'interval holds it in'] : [])],
+    [...head, ...(effects ? ['effect on chance'] : []), ...(known ? ['truth', 'covered in'] : [])],
     rows,
     pooled ? {} : { words: [1] },
   );
 }
 
 function singleTable(name: string, regressions: readonly Regression[], pooled: boolean): string {
-  const rows = regressions.flatMap((regression) =>
-    regression.terms.map((term) => [
-      term.term,
-      ...(pooled ? [] : [regression.arm ?? NONE]),
-      num(term.estimate),
-      num(term.std_error),
-      `${num(term.ci_low)} to ${num(term.ci_high)}`,
-      pValue(term.p_value),
-    ]),
-  );
+  const rows = byTerm(regressions.map(({ arm, terms }) => ({ arm: arm ?? NONE, terms }))).map(({ arm, term }) => [
+    termWords(term.term),
+    ...(pooled ? [] : [arm]),
+    num(term.estimate),
+    num(term.std_error),
+    `${num(term.ci_low)} to ${num(term.ci_high)}`,
+    pValue(term.p_value),
+  ]);
   return table(
     name,
     ['term', ...(pooled ? [] : ['arm']), 'estimate', 's.e.', '95 % interval', 'p'],
@@ -227,12 +245,17 @@ function said(summaries: readonly Summary[], regressions: readonly Regression[])
     for (const term of summary.terms) {
       if (term.truth !== null && term.coverage !== null && term.replicates > 1) {
         lines.push(
-          `The truth of ${term.term} is ${num(term.truth)}; the mean estimate${arm} is ${num(term.mean)}, and ${pct(term.coverage)} of the 95 % intervals hold the truth.`,
+          `The truth of ${termWords(term.term)} is ${num(term.truth)}; the mean estimate${arm} is ${num(term.mean)}, and ${pct(term.coverage)} of the 95 % intervals hold the truth.`,
         );
       }
-      if (term.se_ratio !== null && term.replicates >= 10 && (term.se_ratio < 0.8 || term.se_ratio > 1.25)) {
+      if (
+        term.term !== CONSTANT &&
+        term.se_ratio !== null &&
+        term.replicates >= 10 &&
+        (term.se_ratio < 0.8 || term.se_ratio > 1.25)
+      ) {
         lines.push(
-          `The standard errors of ${term.term}${arm} are ${term.se_ratio < 1 ? 'too small' : 'too large'}: ${fixed(term.se_ratio, 2)} of the spread over replicates.`,
+          `The standard errors of ${termWords(term.term)}${arm} are ${term.se_ratio < 1 ? 'too small' : 'too large'}: ${fixed(term.se_ratio, 2)} of the spread over replicates.`,
         );
       }
     }

@@ -14,6 +14,7 @@ import { contrastRow } from '../contrasts.js';
 import { IndicatorCube } from '../cube.js';
 import type { Coded } from '../field.js';
 import type { Manifest } from '../manifest.js';
+import { type PocketLives, type PocketStepRow, pocketLives } from '../pocket-lives.js';
 import type { PanelQuery, ReadColumn, Results, TableData } from '../read.js';
 import { type EstimatesFile, parseEstimates } from './estimates.js';
 
@@ -121,23 +122,43 @@ export async function gather(results: Results, notes?: Readonly<Record<string, u
   const fields = codebook.resources.find((resource) => resource.name === 'indicators')?.schema.fields ?? [];
   const moments = momentsOf(cube, study.generations);
   const rows = async (name: string): Promise<Rows> => new Rows(await results.table(name));
+  const pockets = await rows('pockets');
   return {
     manifest,
     study,
     networks: ((notes ?? manifest.notes)?.networks ?? {}) as Evidence['networks'],
     cube,
     meanings: new Map(fields.map((field) => [field.name, field.description])),
-    answer: answerOf(study, cube),
+    answer: answerOf(study, cube, livesOf(pockets, study, cube.replicates)),
     moments,
     telling: moments[Math.floor(moments.length / 2)],
     incidence: await rows('incidence'),
     transitions: await rows('transitions'),
     frustration: await rows('frustration'),
-    pockets: await rows('pockets'),
+    pockets,
     regimes: await rows('regimes'),
     shown: await showReplicate(results, study, cube, moments),
     estimates: parseEstimates(await results.text('estimates.json')),
   };
+}
+
+/** Lives of the pockets of each arm; none where no pocket was looked for. */
+function livesOf(pockets: Rows, study: Study, replicates: number): PocketLives[] {
+  if (pockets.count === 0) return [];
+  const rows = new Map<string, PocketStepRow[]>(study.arms.map((arm) => [arm.name, []]));
+  for (let k = 0; k < pockets.count; k++) {
+    rows.get(pockets.text('arm', k))?.push({
+      replicate: pockets.number('replicate', k),
+      generation: pockets.number('generation', k),
+      pocket: pockets.number('pocket', k),
+      size: pockets.number('size', k),
+      places: pockets.number('places', k),
+      pValue: pockets.number('p_value', k),
+      local: pockets.number('local', k),
+      general: pockets.number('general', k),
+    });
+  }
+  return [...rows.values()].map((own) => pocketLives(own, replicates));
 }
 
 /** Start, most telling generation, last decision. */

@@ -563,7 +563,10 @@ function pocketRows(e: Evidence, arm: string, replicate: number): PocketRow[] {
   return rows;
 }
 
-const POCKETS_LISTED = 8;
+/** Pockets listed of each arm. */
+const POCKETS_LISTED = 6;
+/** Level at which a pocket counts as more than chance. */
+const LEVEL = 0.05;
 
 function pockets(e: Evidence): Section | null {
   if (e.pockets.count === 0) return null;
@@ -578,7 +581,7 @@ function pockets(e: Evidence): Section | null {
       if (t.text('arm', k) !== arm || !(t.number('size', k) > 0)) continue;
       const r = t.number('replicate', k);
       seen.add(r);
-      if (t.number('p_value', k) < 0.05) {
+      if (t.number('p_value', k) <= LEVEL) {
         sure.add(r);
         first = Math.min(first, t.number('generation', k));
       }
@@ -589,7 +592,7 @@ function pockets(e: Evidence): Section | null {
       `${Number.isNaN(number) ? '' : `, ${fixed(number, 1)} on average in generation ${e.telling}`}, ` +
       (sure.size === 0
         ? 'none of them larger than chance explains'
-        : `and in ${sure.size} some are larger than chance explains (p below 0.05), the first in generation ${first}`)
+        : `and in ${sure.size} some are larger than chance explains (p at most 0.05), the first in generation ${first}`)
     );
   });
   const plates: string[] = [];
@@ -610,8 +613,12 @@ function pockets(e: Evidence): Section | null {
     const lives = new Map<number, PocketRow[]>();
     for (const row of rows) lives.set(row.pocket, [...(lives.get(row.pocket) ?? []), row]);
     const largest = [...lives.values()]
-      .map((life) => ({ life, top: life.reduce((best, row) => (row.size > best.size ? row : best)) }))
-      .sort((x, y) => y.top.size - x.top.size || x.top.pocket - y.top.pocket)
+      .map((life) => ({
+        life,
+        top: life.reduce((best, row) => (row.size > best.size ? row : best)),
+        sure: Number(life.some((row) => row.pValue <= LEVEL)),
+      }))
+      .sort((x, y) => y.sure - x.sure || y.top.size - x.top.size || x.top.pocket - y.top.pocket)
       .slice(0, POCKETS_LISTED);
     for (const { life, top } of largest) {
       const caused = top.local + top.general;
@@ -639,7 +646,7 @@ function pockets(e: Evidence): Section | null {
       (listed.length === 0
         ? ''
         : table(
-            `The largest pockets of replicate ${replicate}, each when it was largest`,
+            `Pockets of replicate ${replicate}, those beyond chance first, then the largest; each when it was largest`,
             ['', 'generations', 'core', 'fringe', 'places', `mean wealth`, 'local cause', 'least p'],
             listed,
           ) +

@@ -64,7 +64,15 @@ figcaption{margin-top:.45rem}
 .hidden{position:absolute}
 .field h3{margin-bottom:.3rem}
 .field .plates{margin:.3rem 0}
-.beside{display:grid;grid-template-columns:repeat(auto-fit,minmax(min(100%,24rem),1fr));gap:1rem 2.2rem;align-items:start}
+.beside{display:grid;grid-template-columns:1fr;gap:.4rem 2rem;align-items:start}
+.beside figure{max-width:27rem}
+.beside>div,.beside>figure{min-width:0}
+.beside table{font-size:.82rem}
+.beside th,.beside td{padding:.26rem .5rem}
+.beside th:first-child,.beside td:first-child{padding-left:0}
+.beside tbody th{min-width:7rem}
+.beside .scroll{margin-top:0}
+@media (min-width:58rem){.beside{grid-template-columns:21rem 1fr}}
 .scroll{overflow-x:auto;margin:1.1rem 0;max-width:100%}
 .scroll:focus-visible,a:focus-visible{outline:2px solid var(--satisfied);outline-offset:2px}
 table{border-collapse:collapse;font-size:.88rem;line-height:1.35}
@@ -108,8 +116,10 @@ figure,tr,.caution,dt,.field{break-inside:avoid}
 dt{break-after:avoid}
 .plates{grid-template-columns:1fr 1fr;gap:1rem 1.6rem}
 .plates.three,.plates.maps{grid-template-columns:1fr 1fr 1fr;gap:1rem}
-.beside{grid-template-columns:1fr}
-.beside figure{max-width:11cm}
+.beside{grid-template-columns:7.2cm 1fr}
+.beside table{font-size:7.8pt}
+.beside th,.beside td{padding:.14rem .3rem}
+.beside tbody th{min-width:0}
 .scroll{overflow:visible}
 table{font-size:8.4pt}
 th,td{padding:.16rem .45rem}

@@ -16,6 +16,9 @@ import { page } from './page.js';
 import { tablesSection } from './tables.js';
 import { bullets, count, list, num, p, table, typographic } from './words.js';
 
+/** Sentences of the answer in large type. */
+const FIRST = 2;
+
 /** Said besides the answer's own cautions. */
 const MICRODATA =
   'Survey microdata stay on the machine of those who may use them; names and identifiers do not belong in the files of a study.';
@@ -65,7 +68,8 @@ function head(e: Evidence): string {
     p('Report on a simulated study', 'kicker') +
     `<h1>${safe(study.study)}</h1>` +
     p(typographic(answer.question), 'question') +
-    p(typographic(answer.words.join(' ')), 'answer') +
+    p(typographic(answer.words.slice(0, FIRST).join(' ')), 'answer') +
+    (answer.words.length > FIRST ? p(typographic(answer.words.slice(FIRST).join(' '))) : '') +
     p(answer.setting, 'setting') +
     `<div class="caution">${answer.cautions.map((line) => p(line)).join('')}</div>`
   );
