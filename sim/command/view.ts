@@ -48,6 +48,8 @@ const TYPES: Readonly<Record<string, string>> = {
 const POLICY =
   "default-src 'none'; script-src 'self'; worker-src 'self'; style-src 'self'; font-src 'self'; " +
   "img-src 'self' data: blob:; connect-src 'self'; base-uri 'none'; form-action 'none'; frame-ancestors 'none'";
+/** The engine's worker may compile its inner loops (WebAssembly); still no script from a text. */
+const WORKER_POLICY = POLICY.replace("script-src 'self'", "script-src 'self' 'wasm-unsafe-eval'");
 /** The report is one page with its own style and no script. */
 const REPORT_POLICY =
   "default-src 'none'; style-src 'unsafe-inline'; img-src data:; font-src data:; base-uri 'none'; form-action 'none'; frame-ancestors 'none'";
@@ -178,7 +180,10 @@ function answer(
   const inside = root === site ? path.slice(1) || 'index.html' : rest.join('/');
   const file = within(root, inside);
   if (file === null) return void refuse(response, 404, 'There is no such file.');
-  send(request, response, file, root !== site && basename(file) === 'report.html' ? REPORT_POLICY : POLICY);
+  const name = basename(file);
+  const policy =
+    root !== site && name === 'report.html' ? REPORT_POLICY : name.startsWith('engine.worker') ? WORKER_POLICY : POLICY;
+  send(request, response, file, policy);
 }
 
 /** The real path of a file inside a root, or null: links that lead outside count as absent. */
