@@ -53,7 +53,7 @@ export { mix } from '../network/mix/mix.js';
 export type { MixResult, MixSpec } from '../network/mix/spec.js';
 // frustration, pockets, regimes, contrasts
 export { CAUSES, causesOf } from './measure/cause.js';
-export { pairedContrast, replicatesNeeded } from './measure/contrast.js';
+export { meanOverReplicates, pairedContrast, replicatesNeeded } from './measure/contrast.js';
 // polarisation
 export { dip, dipPValue, dipTest } from './measure/dip.js';
 export { duclosEstebanRay } from './measure/duclos-esteban-ray.js';
@@ -84,13 +84,13 @@ export {
   upwardMobility,
 } from './measure/mobility.js';
 export { densityModes, gridDensity, silvermanBandwidth } from './measure/modes.js';
-export { averageRanks, unitRanks } from './measure/order.js';
+export { averageRanks, rankBins, unitRanks } from './measure/order.js';
 export { type PocketCensus, PocketTracker, pocketPlan } from './measure/pocket-tracker.js';
 export { POCKET_RULE, type PocketRule, ROLES } from './measure/pockets.js';
 export { poverty } from './measure/poverty.js';
 export { median, p90p10, quantile } from './measure/quantile.js';
 export { classifyRegime, observeRegime, REGIMES } from './measure/regime.js';
-export type { Values, Weighting } from './measure/sample.js';
+export { type Sample, sampleOf, type Values, type Weighting } from './measure/sample.js';
 export { hoover, mean, variance, varianceBetween, varianceOfLogs } from './measure/spread.js';
 export { rowShares, transitionCounts, transitionMeasures } from './measure/transitions.js';
 export { wolfson } from './measure/wolfson.js';

@@ -16,6 +16,7 @@ import type { PermutationPlan } from '../measure/permutations.js';
 import { type PocketCensus, PocketTracker, pocketPlan } from '../measure/pocket-tracker.js';
 import { type PocketRule, ROLES } from '../measure/pockets.js';
 import { classifyRegime, observeRegime, type RegimeObservation, type RegimeVerdict } from '../measure/regime.js';
+import type { Sample } from '../measure/sample.js';
 import { type TieFacts, tieFacts } from '../measure/tie-facts.js';
 import { countPairs } from '../measure/transitions.js';
 import { stream } from '../random/stream.js';
@@ -151,7 +152,7 @@ interface Carried {
   /** Fifth of each household in generation 0. */
   firstFifth: ArrayLike<number> | null;
   parentFifth: ArrayLike<number> | null;
-  parent: { rank: Float64Array; logWealth: Float64Array } | null;
+  parent: { sample: Sample; rank: Float64Array; logWealth: Float64Array } | null;
 }
 
 /** Listener that measures one replicate, arm after arm. */
@@ -279,7 +280,7 @@ export class Measured {
       const { wealth } = record.columns;
       const parentRank = arm.parent?.rank ?? averageRanks(parentWealth);
       arm.incidence.push(
-        ...growthIncidence(parentWealth, wealth),
+        ...growthIncidence(arm.parent?.sample ?? parentWealth, context.sample),
         ...growthByInitialRank(parentWealth, wealth, undefined, parentRank),
       );
       arm.transitions.push(...countPairs(arm.parentFifth!, fifth, FIFTHS));
@@ -287,7 +288,7 @@ export class Measured {
     arm.firstFifth ??= fifth;
     if (!record.decided) arm.transitions.push(...countPairs(arm.firstFifth, fifth, FIFTHS));
     arm.parentFifth = fifth;
-    arm.parent = { rank, logWealth: context.logWealth };
+    arm.parent = { sample: context.sample, rank, logWealth: context.logWealth };
   }
 
   private pocketTable(generation: number, { rows }: PocketCensus): void {
