@@ -85,6 +85,7 @@ export {
 } from './measure/mobility.js';
 export { densityModes, gridDensity, silvermanBandwidth } from './measure/modes.js';
 export { averageRanks, rankBins, unitRanks } from './measure/order.js';
+export { type PocketLife, pocketLives } from './measure/pocket-lives.js';
 export { type PocketCensus, PocketTracker, pocketPlan } from './measure/pocket-tracker.js';
 export { POCKET_RULE, type PocketRule, ROLES } from './measure/pockets.js';
 export { poverty } from './measure/poverty.js';

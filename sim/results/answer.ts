@@ -8,7 +8,7 @@ import { replicatesNeeded } from '../measure/contrast.js';
 import type { Study } from '../study/complete.js';
 import { type ContrastRow, contrastRow } from './contrasts.js';
 import type { IndicatorCube } from './cube.js';
-import type { PocketLives } from './pocket-lives.js';
+import type { PocketSummary } from './pocket-summary.js';
 
 /** One line of the answer table: a label and a cell for each arm. */
 export interface AnswerLine {
@@ -38,7 +38,8 @@ export const CAUTIONS: readonly string[] = [
 export function percent(x: number): string {
   if (Number.isNaN(x)) return '–';
   const p = 100 * x;
-  return `${Math.abs(p) < 10 && p !== 0 ? p.toFixed(1) : p.toFixed(0)} %`;
+  const text = Math.abs(p) < 10 && p !== 0 ? p.toFixed(1) : p.toFixed(0);
+  return `${text.replace('-', Number(text) === 0 ? '' : '−')} %`;
 }
 
 /** Percentage points, without sign. */
@@ -52,7 +53,7 @@ function decimals(x: number, digits: number): string {
 }
 
 /** Gathers the answer of a finished study. @param lives - of the pockets in each arm, in the order of the arms */
-export function answerOf(study: Study, cube: IndicatorCube, lives: readonly PocketLives[] = []): Answer {
+export function answerOf(study: Study, cube: IndicatorCube, lives: readonly PocketSummary[] = []): Answer {
   const last = cube.generations - 1;
   const decided = last - 1;
   const middle = Math.floor(decided / 2);
@@ -229,7 +230,7 @@ function peakOfPockets(cube: IndicatorCube): number | null {
 
 /** Where pockets arose in one arm, how large they were, how long they lasted, why, and what became of members. */
 function pocketSentences(
-  life: PocketLives,
+  life: PocketSummary,
   arm: string,
   cube: IndicatorCube,
   a: number,

@@ -14,7 +14,7 @@ import type { Row } from './field.js';
 import { FIFTHS } from './measured.js';
 import { partName } from './parts.js';
 import { decodePlane } from './plane.js';
-import { type PocketLives, type PocketStepRow, pocketLives } from './pocket-lives.js';
+import { type PocketStepRow, type PocketSummary, pocketSummary } from './pocket-summary.js';
 import { CsvReader } from './read-csv.js';
 import { readAll, type Store } from './store.js';
 import { type TableName, tableNamed, tablesOf } from './tables.js';
@@ -67,7 +67,7 @@ function cubeOfParts(store: Store, facts: Facts, study: Study): IndicatorCube {
 }
 
 /** The pockets of each arm. */
-function livesOf(store: Store, facts: Facts, study: Study): PocketLives[] {
+function livesOf(store: Store, facts: Facts, study: Study): PocketSummary[] {
   const fields = tableNamed(tablesOf(facts), 'pockets').fields.map((field) => field.name);
   const at = (name: string): number => fields.indexOf(name);
   const [generation, pocket, size, places, p, local, general] = [
@@ -99,7 +99,7 @@ function livesOf(store: Store, facts: Facts, study: Study): PocketLives[] {
       reader.push(decoder.decode(readAll(store, partName(r, a, 'pockets.csv'))!));
       reader.end();
     }
-    return pocketLives(rows, study.replicates);
+    return pocketSummary(rows, study.replicates);
   });
 }
 

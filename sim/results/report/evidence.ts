@@ -14,7 +14,7 @@ import { contrastRow } from '../contrasts.js';
 import { IndicatorCube } from '../cube.js';
 import type { Coded } from '../field.js';
 import type { Manifest } from '../manifest.js';
-import { type PocketLives, type PocketStepRow, pocketLives } from '../pocket-lives.js';
+import { type PocketStepRow, type PocketSummary, pocketSummary } from '../pocket-summary.js';
 import type { PanelQuery, ReadColumn, Results, TableData } from '../read.js';
 import { type EstimatesFile, parseEstimates } from './estimates.js';
 
@@ -143,7 +143,7 @@ export async function gather(results: Results, notes?: Readonly<Record<string, u
 }
 
 /** Lives of the pockets of each arm; none where no pocket was looked for. */
-function livesOf(pockets: Rows, study: Study, replicates: number): PocketLives[] {
+function livesOf(pockets: Rows, study: Study, replicates: number): PocketSummary[] {
   if (pockets.count === 0) return [];
   const rows = new Map<string, PocketStepRow[]>(study.arms.map((arm) => [arm.name, []]));
   for (let k = 0; k < pockets.count; k++) {
@@ -158,7 +158,7 @@ function livesOf(pockets: Rows, study: Study, replicates: number): PocketLives[]
       general: pockets.number('general', k),
     });
   }
-  return [...rows.values()].map((own) => pocketLives(own, replicates));
+  return [...rows.values()].map((own) => pocketSummary(own, replicates));
 }
 
 /** Start, most telling generation, last decision. */

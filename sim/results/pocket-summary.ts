@@ -18,7 +18,7 @@ export interface PocketStepRow {
   readonly general: number;
 }
 
-export interface PocketLives {
+export interface PocketSummary {
   /** Over all replicates. */
   readonly pockets: number;
   readonly significant: number;
@@ -38,7 +38,7 @@ export interface PocketLives {
 /** Level at which a pocket counts as more than chance. */
 const LEVEL = 0.05;
 
-export function pocketLives(rows: readonly PocketStepRow[], replicates: number): PocketLives {
+export function pocketSummary(rows: readonly PocketStepRow[], replicates: number): PocketSummary {
   const lives = new Map<string, PocketStepRow[]>();
   for (const row of rows) {
     if (row.size === 0) continue;
