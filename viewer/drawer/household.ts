@@ -98,7 +98,7 @@ export function householdPanel(app: App): TemplateResult {
       ${shown(
         app,
         `household-${view.household}-reference`,
-        heading.length * 6.7 < third.width - 30 ? heading : 'Whom it sees',
+        heading.length * 6.5 < third.width - 30 ? heading : 'Whom it sees',
         referenceFigure(
           { width: third.width, height: 66 },
           { own: arm.now.wealth[i], neighbours, aspirations, frustrated, society: usesSociety ? society : NaN },
@@ -150,7 +150,7 @@ function whatIf(app: App, problem: Problem, society: number): TemplateResult {
   return html`<div class="what-if">
     <h3 class="hidden-text">What if</h3>
     <ul>
-      ${row('Seeing everyone:', wide[0], asAll.met, `${cause}${differs}`)}
+      ${row('Seeing all:', wide[0], asAll.met, `${cause}${differs}`)}
       ${asThere === null || elsewhere === null ? nothing : row(`As in ${other.name}:`, elsewhere[0], asThere.met, '')}
       ${
         Number.isFinite(enough)

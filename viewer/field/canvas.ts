@@ -96,8 +96,9 @@ export class FieldCanvas {
     return this.#gl.isContextLost();
   }
 
-  resize(width: number, height: number): void {
-    this.#app.renderer.resize(width, height, window.devicePixelRatio || 1);
+  /** @param resolution - device pixels a CSS pixel; the screen's own when left out */
+  resize(width: number, height: number, resolution = window.devicePixelRatio || 1): void {
+    this.#app.renderer.resize(width, height, resolution);
   }
 
   /** Draws a frame. Every field is cut to its box. */

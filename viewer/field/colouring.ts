@@ -84,7 +84,7 @@ function palette(
         const gap = a[i] > 0 ? 1 - wealth[i] / a[i] : 0;
         of[i] = Math.round(((Math.max(-1, Math.min(1, gap)) + 1) / 2) * (STEPS - 1));
       }
-      return { colours: ramp([tokens.green, tokens.line, tokens.purple]), of };
+      return { colours: ramp([tokens.green, tokens.quiet, tokens.purple]), of };
     }
     case 'growth':
       for (let i = 0; i < n; i++) {
@@ -92,7 +92,7 @@ function palette(
         const g = wealth[i] > 0 ? Math.log2(snapshot.childWealth[i] / wealth[i]) : 0;
         of[i] = Math.round(((Math.max(-1, Math.min(1, g)) + 1) / 2) * (STEPS - 1));
       }
-      return { colours: ramp([tokens.purple, tokens.line, tokens.green]), of };
+      return { colours: ramp([tokens.purple, tokens.quiet, tokens.green]), of };
   }
 }
 
@@ -185,7 +185,7 @@ export function legend(
       case 'aspiration gap':
         items.push({
           kind: 'ramp',
-          colours: [tokens.green, tokens.line, tokens.purple],
+          colours: [tokens.green, tokens.quiet, tokens.purple],
           from: 'has twice its aspiration',
           to: 'far below it',
         });
@@ -193,7 +193,7 @@ export function legend(
       case 'growth':
         items.push({
           kind: 'ramp',
-          colours: [tokens.purple, tokens.line, tokens.green],
+          colours: [tokens.purple, tokens.quiet, tokens.green],
           from: 'wealth halves',
           to: 'doubles',
         });

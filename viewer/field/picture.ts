@@ -50,9 +50,36 @@ function frozen(source: SVGSVGElement, width: number, height: number): string {
       const value = style.getPropertyValue(name);
       if (value !== '') element.setAttribute(name, value);
     }
-    if (element.tagName === 'text') element.setAttribute('font-family', style.fontFamily);
   });
+  // an image has none of the page's fonts: texts are written on the picture afterwards
+  for (const text of copy.querySelectorAll('text')) text.remove();
   return new XMLSerializer().serializeToString(copy);
+}
+
+/** Writes the texts of a figure of the page where they stand. */
+function written(draw: CanvasRenderingContext2D, source: SVGSVGElement, origin: DOMRect, family: string): void {
+  for (const text of source.querySelectorAll('text')) {
+    const style = getComputedStyle(text);
+    const at = text.getBBox();
+    const to = text.getScreenCTM();
+    if (to === null) continue;
+    const x = Number(text.getAttribute('x') ?? at.x);
+    const y = Number(text.getAttribute('y') ?? at.y);
+    draw.font = `${style.fontWeight} ${style.fontSize} ${family}`;
+    const anchor = text.getAttribute('text-anchor') ?? 'start';
+    draw.textAlign = anchor === 'middle' ? 'center' : anchor === 'end' ? 'right' : 'left';
+    const [px, py] = [to.a * x + to.e - origin.left, to.d * y + to.f - origin.top];
+    const said = text.textContent ?? '';
+    if (style.paintOrder.startsWith('stroke') && style.stroke !== 'none') {
+      draw.strokeStyle = style.stroke;
+      draw.lineWidth = Number.parseFloat(style.strokeWidth);
+      draw.lineJoin = 'round';
+      draw.strokeText(said, px, py);
+    }
+    draw.fillStyle = style.fill;
+    draw.fillText(said, px, py);
+  }
+  draw.textAlign = 'left';
 }
 
 async function image(svg: string): Promise<HTMLImageElement> {
@@ -67,6 +94,8 @@ async function image(svg: string): Promise<HTMLImageElement> {
  * @param scale - device pixels a CSS pixel
  */
 export async function picture(stage: HTMLElement, texts: PictureTexts, palette: Palette, scale: number): Promise<Blob> {
+  // the canvas is read first: it keeps its drawing only until the browser has shown it
+  const marks = await createImageBitmap(stage.querySelector('canvas.marks') as HTMLCanvasElement);
   const box = stage.getBoundingClientRect();
   const rem = Number.parseFloat(getComputedStyle(document.documentElement).fontSize);
   const room = 1.6 * rem;
@@ -105,10 +134,10 @@ export async function picture(stage: HTMLElement, texts: PictureTexts, palette: 
   const layer = async (selector: string): Promise<void> => {
     const svg = stage.querySelector(selector) as SVGSVGElement;
     const r = svg.getBoundingClientRect();
-    draw.drawImage(await image(frozen(svg, r.width, r.height)), r.left - box.left, r.top - box.top, r.width, r.height);
+    const drawn = await image(frozen(svg, r.width, r.height));
+    draw.drawImage(drawn, r.left - box.left, r.top - box.top, r.width, r.height);
+    written(draw, svg, box, family);
   };
-  // the canvas is read first: it keeps its drawing only until the browser has shown it
-  const marks = await createImageBitmap(stage.querySelector('canvas.marks') as HTMLCanvasElement);
   await layer('svg.under');
   draw.drawImage(marks, 0, 0, box.width, box.height);
   await layer('svg.pyramid');

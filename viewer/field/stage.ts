@@ -244,9 +244,29 @@ export class Stage {
     this.drawNow();
   }
 
-  /** Draws at once: for saving a picture and for measuring. */
+  /** Draws at once: for measuring. */
   drawNow(): void {
     this.#draw();
+  }
+
+  /**
+   * Draws the scene at rest, finer than the screen, and calls `take` before the browser may clear it.
+   *
+   * @param resolution - device pixels a CSS pixel
+   */
+  async still<T>(resolution: number, take: () => Promise<T>): Promise<T> {
+    const { width, height } = this.root.getBoundingClientRect();
+    this.#glide = 1;
+    this.#glideStart = -1;
+    this.#arrived = -1;
+    this.#canvas.resize(width, height, resolution);
+    this.#draw();
+    try {
+      return await take();
+    } finally {
+      this.#canvas.resize(width, height);
+      this.#draw();
+    }
   }
 
   /** Ties drawn in each field at most while something moves: for measuring. */

@@ -14,7 +14,7 @@ import { type Axis, axes } from '../field/arrangement.js';
 import { FieldCanvas } from '../field/canvas.js';
 import { COLOURINGS, type Colouring, type LegendItem, legend } from '../field/colouring.js';
 import { Layouts } from '../field/layouts.js';
-import { CAUTION, picture } from '../field/picture.js';
+import { CAUTION, type PictureTexts, picture } from '../field/picture.js';
 import type { ArmScene, Scene, ShownPocket } from '../field/scene.js';
 import { reducedMotion, Stage } from '../field/stage.js';
 import { type Run, startRun } from '../run/run.js';
@@ -571,21 +571,17 @@ export class App {
     const { stage, scene, view } = this;
     const { info } = this.source;
     if (stage === null || scene === null) throw new Error('There is nothing to draw yet.');
-    stage.drawNow();
-    return picture(
-      stage.root,
-      {
-        title: `${info.title}, replicate ${view.replicate + 1} of ${info.replicates}`,
-        summary: this.#summary(),
-        names: [scene.arms[0].name, scene.arms[1].name],
-        notes: [scene.arms[0].note, scene.arms[1].note],
-        feet: this.#feet(),
-        legend: this.#legend(),
-        caption: `Study “${info.title}”; arms ${scene.arms[0].name} and ${scene.arms[1].name}; generation ${view.generation} of ${info.generations}; ${plural(scene.arms[0].cast.n, 'household')}; seed ${info.seed}; Rungsight ${info.version}.`,
-      },
-      this.tokens,
-      Math.max(2, window.devicePixelRatio),
-    );
+    const scale = Math.max(2, window.devicePixelRatio);
+    const texts: PictureTexts = {
+      title: `${info.title}, replicate ${view.replicate + 1} of ${info.replicates}`,
+      summary: this.#summary(),
+      names: [scene.arms[0].name, scene.arms[1].name],
+      notes: [scene.arms[0].note, scene.arms[1].note],
+      feet: this.#feet(),
+      legend: this.#legend(),
+      caption: `Study “${info.title}”; arms ${scene.arms[0].name} and ${scene.arms[1].name}; generation ${view.generation} of ${info.generations}; ${plural(scene.arms[0].cast.n, 'household')}; seed ${info.seed}; Rungsight ${info.version}.`,
+    };
+    return stage.still(scale, () => picture(stage.root, texts, this.tokens, scale));
   }
 
   #legend(): readonly LegendItem[] {
