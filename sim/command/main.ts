@@ -12,6 +12,7 @@ import { checkCommand } from './check.js';
 import { estimateCommand } from './estimate.js';
 import { networkCommand } from './network.js';
 import { presetsCommand } from './presets.js';
+import { reportCommand } from './report.js';
 import { runCommand } from './run.js';
 import { viewCommand } from './view.js';
 
@@ -26,7 +27,15 @@ const program = new Command('rungsight')
   .configureOutput({ outputError: (text, write) => write(`${usageProblem(text)}\n`) })
   .exitOverride();
 
-for (const register of [runCommand, checkCommand, presetsCommand, viewCommand, estimateCommand, networkCommand]) {
+for (const register of [
+  runCommand,
+  checkCommand,
+  presetsCommand,
+  viewCommand,
+  reportCommand,
+  estimateCommand,
+  networkCommand,
+]) {
   register(program);
 }
 for (const command of program.commands) leaveExitsToMain(command);

@@ -9,7 +9,7 @@ import { availableParallelism } from 'node:os';
 import { basename, join, relative, resolve } from 'node:path';
 import { type Command, Option } from 'commander';
 import { Piscina } from 'piscina';
-import { InputError, RunError } from '../../network/errors.js';
+import { describe, InputError, RunError } from '../../network/errors.js';
 import { type Answer, answerText } from '../results/answer.js';
 import type { Facts } from '../results/facts.js';
 import { finishTables } from '../results/finish.js';
@@ -19,6 +19,7 @@ import type { Study } from '../study/complete.js';
 import { studyText } from '../study/parse.js';
 import { portable } from '../study/portable.js';
 import { VERSION } from '../version.js';
+import { addEstimatesAndReport } from './estimate-after.js';
 import { wholeNumber } from './options.js';
 import { duration, progress } from './progress.js';
 import type { Outcome, WorkerSetup } from './run-worker.js';
@@ -89,12 +90,15 @@ async function run(given: string | undefined, options: RunOptions): Promise<void
   const { answer, notes, tables } = finishTables(folder.store, facts, study);
   for (const { name, rows } of tables) folder.writeTable(facts, name, rows);
   folder.writeCodebook(facts);
+  say('writing the report');
+  const added = await addEstimatesAndReport(folder, study, disk.parsed.place, notes);
   const seconds = (performance.now() - began) / 1000;
   await folder.finish({ seconds, peakMemory: process.resourceUsage().maxRSS * 1024, notes });
   if (quiet) {
-    console.log(JSON.stringify({ folder: folder.out, seconds, answer }, null, 2));
+    console.log(JSON.stringify({ folder: folder.out, seconds, answer, problems: added.problems }, null, 2));
   } else {
-    console.log(finalText(answer, folder.out, seconds));
+    for (const problem of added.problems) console.error(describe(problem));
+    console.log(finalText(answer, folder.out, seconds, added.estimates !== null));
   }
   if (options.view === true) await viewAfter(folder.out, quiet);
 }
@@ -245,16 +249,18 @@ function shown(path: string): string {
   return short.startsWith('..') ? path : short;
 }
 
-function finalText(answer: Answer, out: string, seconds: number): string {
+function finalText(answer: Answer, out: string, seconds: number, estimated: boolean): string {
   const folder = shown(out);
   return [
     '',
     answerText(answer),
     '',
     `Results are in ${folder} (${duration(seconds)}):`,
+    '  report.html      the answer with figures and the model, to read, print or send',
     '  indicators.csv   every measure, by arm, replicate and generation',
     '  contrasts.csv    arm against arm, with intervals',
     '  panel.parquet    every household in every generation, for regressions',
+    ...(estimated ? ["  estimates.csv    the study's regressions; panel.R and panel.py rerun them"] : []),
     '  codebook.md      what each column means',
     '',
     'Next:',

@@ -4,6 +4,7 @@
 import { existsSync, readFileSync, statSync } from 'node:fs';
 import { basename, dirname, relative, resolve } from 'node:path';
 import { InputError, nearest, type Problem } from '../../network/errors.js';
+import { checkStudyEstimates } from '../estimate/of-study.js';
 import { loadInputs } from '../study/inputs.js';
 import { type ParsedStudy, parseStudy } from '../study/parse.js';
 import type { Path } from '../study/problems.js';
@@ -26,7 +27,9 @@ export async function readStudy(given: string): Promise<StudyOnDisk> {
     const full = resolve(folder, path);
     return existsSync(full) && statSync(full).isFile() ? readText(full, path) : null;
   });
-  return { file, parsed, prepared: { study: parsed.study, inputs } };
+  const prepared: Prepared = { study: parsed.study, inputs };
+  await checkStudyEstimates(prepared, parsed.place);
+  return { file, parsed, prepared };
 }
 
 function studyFile(given: string): string {
