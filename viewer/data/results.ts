@@ -328,20 +328,11 @@ class FolderSource implements Source {
   table(name: TableName): Promise<Table | null> {
     let table = this.#tables.get(name);
     if (table === undefined) {
-      table =
-        name === 'estimates'
-          ? this.#estimates()
-          : this.#results.table(name).then((data) => (data === null ? null : asTable(data)));
+      table = this.#results.table(name).then((data) => (data === null ? null : asTable(data)));
       this.#tables.set(name, table);
       table.catch(() => this.#tables.delete(name));
     }
     return table;
-  }
-
-  async #estimates(): Promise<Table | null> {
-    if (!this.#results.manifest.files.some((file) => file.name === 'estimates.csv')) return null;
-    const data = await this.#results.table('estimates').catch(() => null);
-    return data === null ? null : asTable(data);
   }
 
   async files(): Promise<readonly string[]> {

@@ -94,8 +94,7 @@ export type TableName =
   | 'transitions'
   | 'pockets'
   | 'frustration'
-  | 'regimes'
-  | 'estimates';
+  | 'regimes';
 
 /** How far a study run in the page has come. */
 export interface Progress {
