@@ -3,12 +3,12 @@
  */
 import { type Zippable, zipSync } from 'fflate';
 import { assemble } from './assemble.js';
-import { codebook } from './codebook.js';
+import { type Codebook, codebook } from './codebook.js';
 import { writeCsvTable } from './csv.js';
 import type { Facts } from './facts.js';
 import type { Row } from './field.js';
 import { completeManifest, type ManifestEnd, type ManifestHead, manifestText, partialManifest } from './manifest.js';
-import type { Source } from './read.js';
+import { Results, type Source } from './read.js';
 import { type MemoryStore, writeAll } from './store.js';
 import { type Format, type TableName, tableNamed, tablesOf } from './tables.js';
 
@@ -19,8 +19,10 @@ export interface BundleOptions {
   readonly formats: readonly Format[];
   /** Tables computed from all replicates. */
   readonly tables: readonly { readonly name: TableName; readonly rows: readonly Row[] }[];
-  /** Other files, such as the report. */
+  /** Other files, by name. */
   readonly files?: Readonly<Record<string, string>>;
+  /** Files made from the tables once they and the codebook are there, such as estimates and the report. */
+  readonly add?: (results: Results) => Promise<Readonly<Record<string, string>>>;
   readonly end: ManifestEnd;
 }
 
@@ -47,6 +49,10 @@ export async function bundle(
   writeAll(store, 'codebook.md', book.markdown);
   writeAll(store, 'study.yaml', options.studyYaml);
   for (const [name, text] of Object.entries(options.files ?? {})) writeAll(store, name, text);
+  if (options.add !== undefined) {
+    const results = new Results(memorySource(store.files), partialManifest(head), JSON.parse(book.json) as Codebook);
+    for (const [name, text] of Object.entries(await options.add(results))) writeAll(store, name, text);
+  }
   const files = [];
   for (const [name, bytes] of store.files) files.push({ name, bytes: bytes.length, sha256: await sha256(bytes) });
   const manifest = completeManifest(partialManifest(head), options.end, files);

@@ -5,8 +5,10 @@
  * Several such workers share a study's replicates (run.ts); each hands over the parts of a replicate when it is done.
  */
 import { InputError, type Problem } from '../../network/errors.js';
+import { checkStudyEstimates, studyEstimates } from '../../sim/estimate/of-study.js';
 import { bundle } from '../../sim/results/bundle.js';
 import { finishTables } from '../../sim/results/finish.js';
+import { reportHtml } from '../../sim/results/report/report.js';
 import { canonicalText, factsOf, householdsOf, runReplicate } from '../../sim/results/run-replicate.js';
 import { memoryStore, writeAll } from '../../sim/results/store.js';
 import { loadInputs } from '../../sim/study/inputs.js';
@@ -78,6 +80,7 @@ async function read(yaml: string, files: ReadonlyMap<string, Uint8Array>): Promi
     return bytes === undefined ? null : new TextDecoder().decode(bytes);
   });
   prepared = portable({ study: parsed.study, inputs });
+  await checkStudyEstimates(prepared, parsed.place);
   const { study } = prepared;
   const households = householdsOf(prepared);
   const needed = needs(study, households);
@@ -140,6 +143,15 @@ async function assembleParts(whole: Prepared, parts: Files, replicates: number, 
     tables,
     // a page cannot tell its memory
     end: { seconds, peakMemory: 0, notes },
+    // estimates and report tell of the whole study, not of the first replicate
+    ...(replicates === whole.study.replicates
+      ? {
+          add: async (results) => {
+            const { files: estimates } = await studyEstimates(study, results, 'the results', () => 'study');
+            return { ...estimates, 'report.html': await reportHtml(results, notes) };
+          },
+        }
+      : {}),
   });
   scope.postMessage({ kind: 'assembled', files: new Map(files), replicates }, buffersOf(files));
 }
