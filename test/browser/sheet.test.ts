@@ -190,6 +190,21 @@ describe('parts', () => {
     }
   });
 
+  test('regressions are written in the text: the form says how many, and where', async () => {
+    expect(await words(page.locator('[data-path="estimates"]'))).toContain('none');
+    await page.evaluate(() => {
+      const { sheet } = (window as unknown as { page: SheetPage }).page;
+      sheet.open(
+        `${sheet.yaml}estimates:\n  - {name: one, outcome: growth, covariates: [wealth]}\n  - {name: one, outcome: growth}\n`,
+      );
+    });
+    expect(await words(page.locator('[data-path="estimates"]'))).toContain(
+      'one: two estimates have this name; rename one',
+    );
+    await page.getByRole('button', { name: '2 in the text' }).click();
+    expect(await page.evaluate(() => document.activeElement?.className)).toBe('yaml-editor');
+  });
+
   test('the spread of wealth is said either way', async () => {
     await page.getByRole('button', { name: 'give the standard deviation of log instead' }).click();
     // Gini 0.42 of a lognormal: s = √2·Φ⁻¹(0.71) = 0.783 (Aitchison and Brown 1957)

@@ -429,7 +429,7 @@ class Sheet implements SheetState {
     const whole = this.#faults.length === 0;
     return html`<header class="sheet-head">
       <div class="sheet-title">
-        <h2 id="sheet-title">Study</h2>
+        <h2 id="sheet-title" tabindex="-1" autofocus>Study</h2>
         <span class="sheet-name">${typeof title === 'string' || typeof title === 'number' ? title : ''}${this.edited ? html` <span class="edited">edited</span>` : nothing}</span>
       </div>
       <div class="sheet-actions">
@@ -481,7 +481,7 @@ class Sheet implements SheetState {
   }
 
   #faultsOf(question: Question): Fault[] {
-    return question.keys.flatMap((key) => faultsWithin(this.#faults, [key]));
+    return [...question.keys, ...(question.inText ?? [])].flatMap((key) => faultsWithin(this.#faults, [key]));
   }
 
   #question(context: FormContext, question: Question): TemplateResult {
@@ -490,12 +490,13 @@ class Sheet implements SheetState {
       <p class="lead">${question.says}</p>
       ${question.id === 'study' ? this.#wholeStudy(context) : nothing}
       ${question.keys.map((key) => this.#section(context, key))}
+      ${(question.inText ?? []).map((key) => this.#inText(key))}
     </section>`;
   }
 
   /** Problems that no question has a place for. */
   #wholeStudy(context: FormContext): TemplateResult | typeof nothing {
-    const known = new Set(QUESTIONS.flatMap(({ keys }) => keys));
+    const known = new Set(QUESTIONS.flatMap(({ keys, inText }) => [...keys, ...(inText ?? [])]));
     const loose = context.faults.filter(
       (fault) => fault.elsewhere === null && (fault.path.length === 0 || !known.has(String(fault.path[0]))),
     );
@@ -509,6 +510,28 @@ class Sheet implements SheetState {
     if (key === 'population' && field.kind === 'group') return this.#population(context, field);
     if (key === 'reference' && field.kind === 'group') return fieldsTemplate(context, field.fields, [key], 1);
     return fieldTemplate(context, field, [key], 0);
+  }
+
+  /** A section that only the text holds: what it is, how much of it there is, and the way there. */
+  #inText(key: string): TemplateResult {
+    const note = StudyFile.shape[key as keyof typeof StudyFile.shape].meta() as {
+      title?: string;
+      description?: string;
+    };
+    const value = valueAt(this.#draft.raw, [key]);
+    const entries = Array.isArray(value) ? value.length : 0;
+    const spot = this.#draft.spots.find(({ path }) => path.length === 1 && path[0] === key);
+    const faults = faultsWithin(this.#faults, [key]);
+    return html`<div class="setting" data-path=${key}>
+      <span class="label">${note.title}</span>
+      <div class="control">${
+        spot === undefined
+          ? html`<span class="says">none</span>`
+          : html`<button type="button" class="plain act" @click=${() => this.#editor.go(spot.from)}>${entries} in the text</button>`
+      }</div>
+      <div class="about"><p class="says">${note.description} They are written in the text, under ${key}.</p>
+        ${faults.length === 0 ? nothing : html`<div class="wrong">${faults.map((fault) => html`<p>${fault.problem}; ${fault.remedy}.</p>`)}</div>`}</div>
+    </div>`;
   }
 
   #population(context: FormContext, field: GroupField): TemplateResult {

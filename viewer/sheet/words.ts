@@ -14,6 +14,8 @@ export interface Question {
   readonly says: string;
   /** Top-level keys it covers. */
   readonly keys: readonly string[];
+  /** Keys that are written in the text alone: the form says what they are and how many entries there are. */
+  readonly inText?: readonly string[];
 }
 
 export const QUESTIONS: readonly Question[] = [
@@ -65,6 +67,7 @@ export const QUESTIONS: readonly Question[] = [
     ask: 'What counts as a pocket, and what is kept?',
     says: 'How local aspiration traps are told from chance, and what the results folder holds.',
     keys: ['pockets', 'keep'],
+    inText: ['estimates'],
   },
 ];
 

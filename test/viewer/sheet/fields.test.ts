@@ -35,6 +35,8 @@ describe('the fields of the study schema', () => {
   test('every section belongs to exactly one question', () => {
     const asked = QUESTIONS.flatMap(({ keys }) => keys);
     expect([...asked].sort()).toEqual(root.fields.map(({ key }) => key).sort());
+    const inText = QUESTIONS.flatMap((question) => question.inText ?? []);
+    expect([...asked, ...inText].sort()).toEqual(Object.keys(StudyFile.shape).sort());
   });
 
   test('bounds, defaults and usual ranges come over', () => {
