@@ -55,7 +55,8 @@ async function start(): Promise<void> {
   const { results, study } = await opened();
   if (results !== undefined) {
     const source = await openFolder(httpFiles(results), 'folder');
-    await show(source, { yaml: source.info.yaml, files: new Map(), linked: true });
+    const report = (await source.files()).includes('report.html') ? `${results}report.html` : null;
+    await show(source, { yaml: source.info.yaml, files: new Map(), linked: true, report });
     return;
   }
   if (study !== undefined) {

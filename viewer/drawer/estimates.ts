@@ -3,7 +3,7 @@
  */
 import { html, type TemplateResult } from 'lit-html';
 import { type CoefficientStrip, coefficientsFigure } from '../../sim/results/figures/coefficients.js';
-import { short } from '../../sim/results/figures/figure.js';
+import { short as plain } from '../../sim/results/figures/figure.js';
 import { type EstimatesFile, parseEstimates, termWords } from '../../sim/results/report/estimates.js';
 import type { App } from '../screen/app.js';
 import { percent } from '../screen/words.js';
@@ -14,6 +14,8 @@ const FILE = 'estimates.json';
 const CONSTANT = '(const)';
 const found = new Fresh<EstimatesFile | null>();
 let chosen = '';
+
+const short = (value: number): string => plain(value).replace(/^-/, '−');
 
 async function load(app: App): Promise<EstimatesFile | null> {
   const files = await app.source.files();

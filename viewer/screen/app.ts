@@ -37,6 +37,8 @@ export interface Origin {
   readonly files: ReadonlyMap<string, Uint8Array>;
   /** True when a link to this page brings the same study back. */
   readonly linked: boolean;
+  /** Address of the study's report, where there is one to go to. */
+  readonly report?: string | null;
 }
 
 export class App {
@@ -371,6 +373,7 @@ export class App {
           title: info.title,
           replicates: info.shown,
           replicateCount: info.replicates,
+          report: this.origin.report ?? null,
           armNames: info.arms.map((a) => a.name),
           notes: [scene?.arms[0].note ?? '', scene?.arms[1].note ?? ''],
           feet: this.#feet(),

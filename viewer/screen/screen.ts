@@ -14,6 +14,7 @@ export interface ScreenParts {
   readonly title: string;
   readonly replicates: readonly number[];
   readonly replicateCount: number;
+  readonly report: string | null;
   readonly armNames: readonly string[];
   readonly notes: readonly [string, string];
   readonly feet: readonly [string, string];
@@ -98,6 +99,7 @@ export function screenTemplate(parts: ScreenParts, events: ScreenEvents): Templa
                   of ${parts.replicateCount}</label>`
               : html`<span class="of">replicate ${view.replicate + 1} of ${parts.replicateCount}</span>`
           }
+          ${parts.report === null ? nothing : html`<a class="report" href=${parts.report} target="_blank" rel="noopener">report</a>`}
         </div>
         <p class="summary" role="status" aria-live="polite">${parts.summary}</p>
         ${
