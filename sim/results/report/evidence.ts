@@ -4,6 +4,7 @@
  * Of the panel and the ties it reads the row groups of one replicate, and of those the columns it draws, so that a
  * folder of any size can be reported.
  */
+import { ladder } from '../../../network/arrange/ladder.js';
 import { map } from '../../../network/arrange/map.js';
 import { fromPairs, type Ties } from '../../../network/graph.js';
 import { stream } from '../../random/stream.js';
@@ -19,7 +20,7 @@ import type { PanelQuery, ReadColumn, Results, TableData } from '../read.js';
 import { type EstimatesFile, parseEstimates } from './estimates.js';
 
 /** Most households laid out on a map: beyond, the layout takes minutes and the marks are a smear. */
-export const MAP_LIMIT = 20_000;
+export const MAP_LIMIT = 10_000;
 
 /** Households of one arm in one generation of the replicate shown. */
 export interface Moment {
@@ -41,6 +42,8 @@ export interface ArmShown {
   readonly group: Coded;
   /** Drawn positions of every household, or null where there are too many. */
   readonly positions: Float32Array | null;
+  /** Place on the ladder of every household; null when the panel is thinned. */
+  readonly sideways: Float32Array | null;
 }
 
 /** The replicate that is drawn household by household. */
@@ -251,15 +254,32 @@ async function showReplicate(
       });
     }
     const first = moments[0].ties;
+    const place = who.columns.place as Int32Array;
+    const group = who.columns.group as Coded;
+    const { wealth } = moments[0];
     arms.push({
       name,
       moments,
-      place: who.columns.place as Int32Array,
-      group: who.columns.group as Coded,
+      place,
+      group,
+      sideways:
+        wealth.length < n
+          ? null
+          : ladder(first ?? untied(n), {
+              n,
+              place: Uint32Array.from(place),
+              group: Uint32Array.from(group.codes),
+              wealth,
+            }).sideways,
       positions: first === null ? null : map(first, stream(study.seed, replicate, `report map:${name}`)),
     });
   }
   return { replicate, arms };
+}
+
+/** A ladder needs ties for the order within a place only: with very many households that is not seen. */
+function untied(n: number): Ties {
+  return { n, start: new Uint32Array(n + 1), target: new Uint32Array(0), weight: null };
 }
 
 /** The ties of one generation; the same object for generations with the same ties. */

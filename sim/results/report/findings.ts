@@ -9,6 +9,7 @@ import { toPairs } from '../../../network/graph.js';
 import { quantileOfSorted } from '../../measure/quantile.js';
 import { type ContrastRow, contrastRow } from '../contrasts.js';
 import { densitiesFigure } from '../figures/densities.js';
+import { fieldFigure } from '../figures/field.js';
 import { safe } from '../figures/figure.js';
 import { type Interval, intervalsFigure, intervalsHeight } from '../figures/intervals.js';
 import { lifelinesFigure, type PocketMoment } from '../figures/lifelines.js';
@@ -30,6 +31,8 @@ const WIDE = 420;
 /** Most ties and marks drawn over all networks together: keeps the page within what can be sent by mail. */
 const TIES_DRAWN = 24_000;
 const MARKS_DRAWN = 36_000;
+/** Households marked on a ladder: more would cover each other. */
+const LADDER_MARKS = 900;
 
 /** Sections with figures, in order. */
 export function findings(e: Evidence): Section[] {
@@ -442,8 +445,9 @@ function networks(e: Evidence): Section | null {
   const drawn = e.shown?.arms.every((arm) => arm.positions !== null) ? mapPlates(e) : '';
   const tooMany =
     e.shown !== null && drawn === ''
-      ? p(`With more than ${grouped(MAP_LIMIT)} households the networks are not drawn here; the viewer shows them.`)
+      ? p(`More than ${grouped(MAP_LIMIT)} households make no map that can be read; the viewer shows them.`, 'note')
       : '';
+  const byWealth = ladderPlates(e);
   if (rows.length === 0 && drawn === '') return null;
   return {
     id: 'networks',
@@ -451,7 +455,8 @@ function networks(e: Evidence): Section | null {
     html:
       (rows.length === 0 ? '' : table('How the networks differ, at the start', ['', ...e.cube.arms], rows)) +
       drawn +
-      tooMany,
+      tooMany +
+      byWealth,
   };
 }
 
@@ -508,6 +513,51 @@ function mapPlates(e: Evidence): string {
         `The drawing knows the ties only, not places, groups or wealth; the few that lie far out stand at the edge. ${shownWords(e)}` +
         (thinned ? ' Of so many, evenly chosen households and ties are drawn.' : ''),
     ) + out.join('\n')
+  );
+}
+
+/** Households by place and wealth. */
+function ladderPlates(e: Evidence): string {
+  const shown = e.shown;
+  if (shown === null || shown.arms.some((arm) => arm.sideways === null)) return '';
+  let low = Infinity;
+  let high = -Infinity;
+  for (const { moments } of shown.arms)
+    for (const { wealth } of moments)
+      for (const w of wealth) {
+        if (!(w > 0)) continue;
+        if (w < low) low = w;
+        if (w > high) high = w;
+      }
+  const range = [Math.log(low), Math.log(high)] as const;
+  const cells = shown.arms.flatMap(({ name, moments, sideways }) =>
+    moments.map(({ generation, wealth, met }) => {
+      const step = Math.max(1, Math.ceil(wealth.length / LADDER_MARKS));
+      const kept = Array.from({ length: Math.ceil(wealth.length / step) }, (_, k) => k * step);
+      return plate(
+        fieldFigure(
+          { width: 300, height: 260 },
+          {
+            name,
+            sideways: kept.map((i) => sideways?.[i] ?? 0),
+            wealth: kept.map((i) => wealth[i]),
+            met: kept.map((i) => met[i]),
+          },
+          range,
+          `Households of ${name} by place and wealth, generation ${generation}`,
+        ),
+        `Generation ${generation}.`,
+      );
+    }),
+  );
+  const thinned = shown.arms[0].moments[0].wealth.length > LADDER_MARKS;
+  return (
+    '<h3>The same households by place and wealth</h3>' +
+    p(
+      `Height is wealth${places(e) > 1 ? ', and places stand side by side, those poorer at the start on the left' : ''}; ` +
+        `a filled disc is satisfied, an open ring frustrated.${thinned ? ' Of so many, evenly chosen households are drawn.' : ''} ${shownWords(e)}`,
+    ) +
+    `<div class="plates three">${cells.join('')}</div>`
   );
 }
 
@@ -586,13 +636,16 @@ function pockets(e: Evidence): Section | null {
         first = Math.min(first, t.number('generation', k));
       }
     }
+    if (seen.size === 0) return `no pocket appears in ${quoted(arm)}`;
     const number = has(e, 'pockets') ? cube.mean('pockets', a, e.telling) : NaN;
     return (
       `in ${quoted(arm)} pockets appear in ${seen.size} of ${count(cube.replicates, 'replicate')}` +
       `${Number.isNaN(number) ? '' : `, ${fixed(number, 1)} on average in generation ${e.telling}`}, ` +
-      (sure.size === 0
-        ? 'none of them larger than chance explains'
-        : `and in ${sure.size} some are larger than chance explains (p at most 0.05), the first in generation ${first}`)
+      (e.study.pockets.permutations === 0
+        ? 'not tested against chance (the study makes no permutations)'
+        : sure.size === 0
+          ? 'none of them larger than chance explains'
+          : `and in ${sure.size} some are larger than chance explains (p at most 0.05), the first in generation ${first}`)
     );
   });
   const plates: string[] = [];
