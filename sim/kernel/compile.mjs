@@ -8,9 +8,9 @@ import asc from 'assemblyscript/asc';
 /** The module's bytes. */
 export async function compile() {
   const source = readFileSync(new URL('assembly/kernel.ts', import.meta.url), 'utf8');
-  // two pages of memory, nothing of the compiler's own in it: the source places everything itself
-  const options = ['-O3', '--runtime', 'stub', '--noAssert', '--use', 'abort='];
-  const memory = ['--initialMemory', '2', '--maximumMemory', '2', '--memoryBase', '98304'];
+  // three pages of memory, nothing of the compiler's own in it: the source places everything itself
+  const options = ['-O3', '--runtime', 'stub', '--noAssert', '--enable', 'simd'];
+  const memory = ['--initialMemory', '3', '--maximumMemory', '3', '--memoryBase', '190000'];
   let bytes = new Uint8Array(0);
   const { error, stderr } = await asc.main(['kernel.ts', '--outFile', 'kernel.wasm', ...options, ...memory], {
     readFile: (name) => (name === 'kernel.ts' ? source : null),

@@ -13,16 +13,21 @@ export const CHUNK = 1024;
 
 /** Columns of length CHUNK that live in the kernel's memory. */
 export interface Kernel {
-  /** In and out of draws and shocks; shares its space with `wealth`. */
+  /** In and out of draws and shocks. */
   readonly draws: Float64Array;
-  /** The shared part of shocks; shares its space with `childWeight`. */
+  /** The shared part of shocks. */
   readonly common: Float64Array;
   readonly wealth: Float64Array;
   readonly childWeight: Float64Array;
   readonly aspirations: readonly Float64Array[];
   readonly planned: Float64Array;
   readonly investment: Float64Array;
+  readonly consumption: Float64Array;
+  readonly childWealth: Float64Array;
   readonly met: Uint8Array;
+  readonly reached: Uint8Array;
+  /** Growth table: 6 coefficients a cell, at most 1024 cells. */
+  readonly growth: Float64Array;
   /** Milestone weights, length 4. */
   readonly weights: Float64Array;
   readonly call: Calls;
@@ -56,6 +61,8 @@ export interface Calls {
     milestones: number,
   ): void;
   choose(count: number): void;
+  chooseByTable(count: number, cells: number, threshold: number, low: number, grossReturn: number): void;
+  outcome(count: number, milestones: number): void;
 }
 
 interface Exports extends Calls {
@@ -95,14 +102,18 @@ function makeKernel(): Kernel | null {
   new Float64Array(memory, 7232, TABLES.powerOfTwo.length).set(TABLES.powerOfTwo);
   exports.setConstants(TABLES.ln2High, TABLES.ln2Low, TABLES.stepHigh, TABLES.stepLow, TABLES.perStep);
   return {
-    draws: column(0),
-    common: column(1),
+    draws: column(8),
+    common: column(9),
+    consumption: column(10),
+    childWealth: column(11),
     wealth: column(0),
     childWeight: column(1),
     planned: column(2),
     investment: column(3),
     aspirations: [column(4), column(5), column(6), column(7)],
-    met: new Uint8Array(memory, 24576 + 8 * CHUNK * 8, CHUNK),
+    met: new Uint8Array(memory, 24576 + 12 * CHUNK * 8, CHUNK),
+    reached: new Uint8Array(memory, 24576 + 12 * CHUNK * 8 + CHUNK, CHUNK),
+    growth: new Float64Array(memory, 131072, 6 * 1024),
     weights: new Float64Array(memory, 23616, 4),
     call: exports,
   };

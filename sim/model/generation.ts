@@ -13,7 +13,7 @@ import { compileReference, type Reference } from './reference.js';
 import { drawShocks } from './shock.js';
 import type { Generation, Households, Milestone, Model, Part } from './types.js';
 
-/** Columns for n households: 57 + 8·milestones bytes a household. */
+/** Columns for n households: 51 + 8·milestones bytes a household. */
 export function makeGeneration(n: number, milestones: number): Generation {
   return {
     wealth: new Float64Array(n),

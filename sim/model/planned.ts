@@ -8,7 +8,7 @@
  *     φ(k) = [δ·f′(k)·S(f(k))]^(−1/σ) − (y − k) = 0,   S(z) = z^−σ + Σ_met π_m (z − a_m)^−η,
  *
  * because φ rises and is nearly straight (exactly so with no milestone and linear f; concave with η = σ, a CES form), by
- * Newton's method kept inside a bracket.
+ * Halley's method (Newton's with the second derivative, which costs no further power) kept inside a bracket.
  */
 import { exp, log } from '../../network/elementary.js';
 import type { Kernel } from '../kernel/kernel.js';
@@ -47,8 +47,9 @@ export class PlannedChoice implements Choice {
   /** Aspirations ascending, with their weights. */
   private readonly a: Float64Array;
   private readonly pi: Float64Array;
-  /** φ′ of the last evaluation. */
+  /** φ′ and φ″ of the last evaluation. */
   private slope: number;
+  private curvature: number;
   private peaks: Peak[] | null;
 
   constructor(technology: Technology, preferences: Preferences, milestoneWeights: readonly number[]) {
@@ -69,6 +70,7 @@ export class PlannedChoice implements Choice {
     this.a = new Float64Array(milestoneWeights.length);
     this.pi = new Float64Array(milestoneWeights.length);
     this.slope = 0.5;
+    this.curvature = 0.5;
     this.peaks = null;
   }
 
@@ -151,12 +153,14 @@ export class PlannedChoice implements Choice {
       if (lower >= reach) break;
       if (!(upper > lower) || upper <= 0) continue;
       let kHigh = y;
+      let atHigh = 0;
       if (upper < reach) {
         kHigh = this.linear ? upper / this.scale : investmentFor(this.technology, upper);
         // so far down that powers would underflow: met by any plan
         if (!(kHigh > NEGLIGIBLE * y)) continue;
         // still rising at the next milestone: what lies beyond it is better
-        if (this.evaluate(kHigh, upper, y, delta, j) < 0) {
+        atHigh = this.evaluate(kHigh, upper, y, delta, j);
+        if (atHigh < 0) {
           kLow = kHigh;
           continue;
         }
@@ -164,7 +168,7 @@ export class PlannedChoice implements Choice {
       // a milestone of weight 0 adds no slope, so the peak of this segment may lie below it
       const bare = kLow > 0 && this.pi[j - 1] === 0;
       if (!bare || this.evaluate(kLow, lower, y, delta, j) < 0) {
-        const k = this.root(kLow, kHigh, y, delta, j);
+        const k = this.root(kLow, kHigh, atHigh, y, delta, j);
         let z = this.childWealth(k);
         if (z < lower) z = lower;
         let met = j;
@@ -199,10 +203,12 @@ export class PlannedChoice implements Choice {
       for (let m = 0; m < M; m++) factor += m < j ? pi[m] : this.lambda * pi[m];
       const weight = delta * factor;
       let kHigh = y;
+      let atHigh = 0;
       if (upper < reach) {
         kHigh = this.linear ? upper / this.scale : investmentFor(this.technology, upper);
         if (!(kHigh > NEGLIGIBLE * y)) continue;
-        if (this.evaluate(kHigh, upper, y, weight, 0) < 0) {
+        atHigh = this.evaluate(kHigh, upper, y, weight, 0);
+        if (atHigh < 0) {
           kLow = kHigh;
           continue;
         }
@@ -213,7 +219,7 @@ export class PlannedChoice implements Choice {
         k = kLow;
         z = lower;
       } else {
-        k = this.root(kLow, kHigh, y, weight, 0);
+        k = this.root(kLow, kHigh, atHigh, y, weight, 0);
         z = this.childWealth(k);
         if (z < lower) z = lower;
         if (z > upper) z = upper;
@@ -250,67 +256,90 @@ export class PlannedChoice implements Choice {
     return crra(c, this.sigma) + delta * value;
   }
 
-  /** φ(k) with the lowest `met` milestones met; leaves φ′(k) in `slope`. `z` is f(k), passed in where it is known exactly. */
+  /**
+   * φ(k) with the lowest `met` milestones met; leaves φ′(k) and φ″(k) in `slope` and `curvature`. `z` is f(k), passed in
+   * where it is known exactly.
+   */
   private evaluate(k: number, z: number, y: number, delta: number, met: number): number {
     const { sigma, eta, a, pi } = this;
     let marginal = this.scale;
-    // f″/f′
+    // f″/f′ and its derivative
     let bend = 0;
+    let bendSlope = 0;
     if (!this.linear) {
       const power = (this.alpha * (z - this.kept * k)) / k;
       marginal = power + this.kept;
       bend = ((this.alpha - 1) * power) / (k * marginal);
+      bendSlope = bend * ((this.alpha - 2) / k - bend);
     }
+    // S, −S′ and S″
     let s = exp(-sigma * log(z));
     let fall = (sigma * s) / z;
+    let fall2 = ((sigma + 1) * fall) / z;
     for (let m = 0; m < met; m++) {
       const above = z - a[m];
       if (!(above > 0)) {
         if (pi[m] === 0) continue;
         this.slope = Infinity;
+        this.curvature = 0;
         return k - y;
       }
       const term = pi[m] * exp(-eta * log(above));
+      const first = (eta * term) / above;
       s += term;
-      fall += (eta * term) / above;
+      fall += first;
+      fall2 += ((eta + 1) * first) / above;
     }
     const p = exp(log(delta * marginal * s) / -sigma);
-    this.slope = 1 - (p / sigma) * (bend - (marginal * fall) / s);
+    const drop = (marginal * fall) / s;
+    // first and second derivative of ln p
+    const l = (drop - bend) / sigma;
+    const l2 = (drop * (drop + bend) - (marginal * marginal * fall2) / s - bendSlope) / sigma;
+    this.slope = 1 + p * l;
+    this.curvature = p * (l * l + l2);
     return p - (y - k);
   }
 
-  /** The root of φ in (low, high), where φ(low) < 0 ≤ φ(high). */
-  private root(low: number, high: number, y: number, delta: number, met: number): number {
+  /**
+   * The root of φ in (low, high), where φ(low) < 0 ≤ φ(high); `atHigh` is φ(high), 0 if not known. Halley's method in a
+   * bracket.
+   */
+  private root(low: number, high: number, atHigh: number, y: number, delta: number, met: number): number {
     const from = low;
-    let k = this.start(low, high, y, delta, met);
+    let k = this.start(low, high, atHigh, y, delta, met);
     let lastMove = high - low;
     for (let step = 0; step < 200; step++) {
       const value = this.evaluate(k, this.childWealth(k), y, delta, met);
       if (value === 0) return k;
       if (value < 0) low = k;
       else high = k;
-      let next = k - value / this.slope;
-      let move = next - k;
-      const size = move < 0 ? -move : move;
-      const room = Math.min(k - from, y - k);
-      // convergence is quadratic: after a step this small the error is below the last place
-      if (size <= 1e-8 * room && next > low && next < high) return next;
+      let move = -value / this.slope;
+      const bendBy = 1 - (0.5 * value * this.curvature) / (this.slope * this.slope);
+      if (bendBy > 0.2 && bendBy < 5) move /= bendBy;
+      let next = k + move;
+      let size = move < 0 ? -move : move;
+      // convergence is cubic: what a step of 1e−4 leaves is near 1e−12
+      if (size <= 1e-4 * Math.min(k - from, y - k)) return next < low ? low : next > high ? high : next;
       if (!(next > low && next < high) || size > 0.7 * lastMove) {
         next = 0.5 * (low + high);
         move = next - k;
+        size = move < 0 ? -move : move;
       }
-      lastMove = move < 0 ? -move : move;
+      lastMove = size;
       if (next === k || next <= low || next >= high) return k;
       k = next;
     }
     return k;
   }
 
-  private start(low: number, high: number, y: number, delta: number, met: number): number {
+  private start(low: number, high: number, atHigh: number, y: number, delta: number, met: number): number {
+    // a straight line through φ at both ends, where known
+    let k = atHigh > 0 ? low + ((high - low) * (y - low)) / (y - low + atHigh) : 0.5 * (low + high);
     if (this.linear && this.eta === this.sigma) {
       // each term of S alone gives a root left of the true one: S^(−1/σ) is below every term's
       const kappa = exp(log(delta * this.scale) / this.sigma);
-      let k = y / (1 + this.scale / kappa);
+      const bare = y / (1 + this.scale / kappa);
+      if (bare > k || met === 0) k = bare;
       for (let m = 0; m < met; m++) {
         if (this.pi[m] === 0) continue;
         const kappaM = kappa * exp(log(this.pi[m]) / this.sigma);
@@ -318,8 +347,7 @@ export class PlannedChoice implements Choice {
         const alone = (this.a[m] + kappaM * y) / (this.scale + kappaM);
         if (alone > k) k = alone;
       }
-      if (k > low && k < high) return k;
     }
-    return 0.5 * (low + high);
+    return k > low && k < high ? k : 0.5 * (low + high);
   }
 }

@@ -22,10 +22,13 @@ const CHILD_WEIGHT: usize = COLUMNS + COLUMN;
 const PLANNED: usize = COLUMNS + 2 * COLUMN;
 const INVESTMENT: usize = COLUMNS + 3 * COLUMN;
 const ASPIRATION: usize = COLUMNS + 4 * COLUMN;
-const MET: usize = COLUMNS + 8 * COLUMN;
-/** Draws and shocks use the same space. */
-const DRAW: usize = COLUMNS;
-const COMMON: usize = COLUMNS + COLUMN;
+const DRAW: usize = COLUMNS + 8 * COLUMN;
+const COMMON: usize = COLUMNS + 9 * COLUMN;
+const CONSUMPTION: usize = COLUMNS + 10 * COLUMN;
+const CHILD_WEALTH: usize = COLUMNS + 11 * COLUMN;
+const MET: usize = COLUMNS + 12 * COLUMN;
+const REACHED: usize = MET + CHUNK;
+const GROWTH: usize = 131072;
 
 const ROUND: f64 = 6755399441055744.0;
 let LN2_HIGH: f64 = 0;
@@ -166,42 +169,26 @@ function tailQuantile(q: f64, u: f64): f64 {
   return q < 0 ? -x : x;
 }
 
-function normalQuantile(u: f64): f64 {
-  const q = u - 0.5;
-  if (q <= 0.425 && q >= -0.425) {
-    const r = 0.180625 - q * q;
-    return (
-      (q *
-        (((((((r * 2509.0809287301226727 + 33430.575583588128105) * r + 67265.770927008700853) * r +
-          45921.953931549871457) *
-          r +
-          13731.693765509461125) *
-          r +
-          1971.5909503065514427) *
-          r +
-          133.14166789178437745) *
-          r +
-          3.387132872796366608)) /
-      (((((((r * 5226.495278852545925 + 28729.085735721942674) * r + 39307.89580009271061) * r +
-        21213.794301586595867) *
-        r +
-        5394.1960214247511077) *
-        r +
-        687.1870074920579083) *
-        r +
-        42.313330701600911252) *
-        r +
-        1)
-    );
-  }
-  return tailQuantile(q, u);
+@inline
+function two(x: f64): v128 {
+  return f64x2.splat(x);
 }
 
-function toUniform(high: u32, low: u32): f64 {
-  return (<f64>(high >>> 6) * 67108864 + <f64>(low >>> 6) + 0.5) * 2.220446049250313e-16;
+/** (high·2^26 + low + ½)·2^−52 of the top 26 bits of two words, for lanes 0 and 1. */
+@inline
+function toUniforms(high: v128, low: v128): v128 {
+  const h = f64x2.convert_low_i32x4_u(i32x4.shr_u(high, 6));
+  const l = f64x2.convert_low_i32x4_u(i32x4.shr_u(low, 6));
+  return f64x2.mul(f64x2.add(f64x2.add(f64x2.mul(h, two(67108864)), l), two(0.5)), two(2.220446049250313e-16));
 }
 
-/** DRAW[i] = uniform (or normal) of household first + i, for an even `first`; an odd `count` writes one more. */
+/** Lanes 2 and 3 moved to 0 and 1. */
+@inline
+function lastTwo(v: v128): v128 {
+  return v128.shuffle<i32>(v, v, 2, 3, 2, 3);
+}
+
+/** DRAW[i] = uniform (or normal) of household first + i, for a `first` divisible by 8; writes up to the next 8. */
 export function draw(
   normals: bool,
   first: u32,
@@ -212,44 +199,174 @@ export function draw(
   low: u32,
   high: u32,
 ): void {
-  for (let i = 0; i < count; i += 2) {
-    let c0: u32 = (first + <u32>i) >>> 1;
-    let c1 = generation;
-    let c2 = replicate;
-    let c3 = purpose;
-    let k0 = low;
-    let k1 = high;
+  const m0 = i32x4.splat(0xd2511f53);
+  const m1 = i32x4.splat(0xcd9e8d57);
+  const w0 = i32x4.splat(0x9e3779b9);
+  const w1 = i32x4.splat(0xbb67ae85);
+  for (let i = 0; i < count; i += 8) {
+    // four counters at once, one a lane
+    let c0 = i32x4.add(i32x4.splat((first + <u32>i) >>> 1), i32x4(0, 1, 2, 3));
+    let c1 = i32x4.splat(generation);
+    let c2 = i32x4.splat(replicate);
+    let c3 = i32x4.splat(purpose);
+    let k0 = i32x4.splat(low);
+    let k1 = i32x4.splat(high);
     for (let round = 0; round < 10; round++) {
-      const p0 = <u64>c0 * 0xd2511f53;
-      const p1 = <u64>c2 * 0xcd9e8d57;
-      c0 = <u32>(p1 >> 32) ^ c1 ^ k0;
-      c1 = <u32>p1;
-      c2 = <u32>(p0 >> 32) ^ c3 ^ k1;
-      c3 = <u32>p0;
-      k0 += 0x9e3779b9;
-      k1 += 0xbb67ae85;
+      const p0a = i64x2.extmul_low_i32x4_u(c0, m0);
+      const p0b = i64x2.extmul_high_i32x4_u(c0, m0);
+      const p1a = i64x2.extmul_low_i32x4_u(c2, m1);
+      const p1b = i64x2.extmul_high_i32x4_u(c2, m1);
+      c0 = v128.xor(v128.xor(v128.shuffle<i32>(p1a, p1b, 1, 3, 5, 7), c1), k0);
+      c1 = v128.shuffle<i32>(p1a, p1b, 0, 2, 4, 6);
+      c2 = v128.xor(v128.xor(v128.shuffle<i32>(p0a, p0b, 1, 3, 5, 7), c3), k1);
+      c3 = v128.shuffle<i32>(p0a, p0b, 0, 2, 4, 6);
+      k0 = i32x4.add(k0, w0);
+      k1 = i32x4.add(k1, w1);
     }
-    const u = toUniform(c0, c1);
-    const v = toUniform(c2, c3);
     const at = DRAW + (<usize>i << 3);
-    store<f64>(at, normals ? normalQuantile(u) : u);
-    store<f64>(at, normals ? normalQuantile(v) : v, 8);
+    let even = toUniforms(c0, c1);
+    let odd = toUniforms(c2, c3);
+    v128.store(at, v128.shuffle<i64>(even, odd, 0, 2));
+    v128.store(at, v128.shuffle<i64>(even, odd, 1, 3), 16);
+    even = toUniforms(lastTwo(c0), lastTwo(c1));
+    odd = toUniforms(lastTwo(c2), lastTwo(c3));
+    v128.store(at, v128.shuffle<i64>(even, odd, 0, 2), 32);
+    v128.store(at, v128.shuffle<i64>(even, odd, 1, 3), 48);
   }
+  if (normals) {
+    for (let i = 0; i < count; i += 2) {
+      const at = DRAW + (<usize>i << 3);
+      v128.store(at, quantiles(v128.load(at)));
+    }
+  }
+}
+
+@inline
+function horner(p: v128, r: v128, c: f64): v128 {
+  return f64x2.add(f64x2.mul(p, r), two(c));
+}
+
+/** normalQuantile of two lanes: the middle together, the tails one by one. */
+function quantiles(u: v128): v128 {
+  const q = f64x2.sub(u, two(0.5));
+  const middle = f64x2.le(f64x2.abs(q), two(0.425));
+  const r = f64x2.sub(two(0.180625), f64x2.mul(q, q));
+  let p = horner(two(2509.0809287301226727), r, 33430.575583588128105);
+  p = horner(p, r, 67265.770927008700853);
+  p = horner(p, r, 45921.953931549871457);
+  p = horner(p, r, 13731.693765509461125);
+  p = horner(p, r, 1971.5909503065514427);
+  p = horner(p, r, 133.14166789178437745);
+  p = horner(p, r, 3.387132872796366608);
+  let d = horner(two(5226.495278852545925), r, 28729.085735721942674);
+  d = horner(d, r, 39307.89580009271061);
+  d = horner(d, r, 21213.794301586595867);
+  d = horner(d, r, 5394.1960214247511077);
+  d = horner(d, r, 687.1870074920579083);
+  d = horner(d, r, 42.313330701600911252);
+  d = horner(d, r, 1);
+  let x = f64x2.div(f64x2.mul(q, p), d);
+  const inside = i64x2.bitmask(middle);
+  if (inside != 3) {
+    if ((inside & 1) == 0) {
+      x = f64x2.replace_lane(x, 0, tailQuantile(f64x2.extract_lane(q, 0), f64x2.extract_lane(u, 0)));
+    }
+    if ((inside & 2) == 0) {
+      x = f64x2.replace_lane(x, 1, tailQuantile(f64x2.extract_lane(q, 1), f64x2.extract_lane(u, 1)));
+    }
+  }
+  return x;
+}
+
+/** exp of two lanes. */
+function exps(x: v128): v128 {
+  const inside = v128.and(f64x2.gt(x, two(-708)), f64x2.lt(x, two(709)));
+  if (i64x2.bitmask(inside) != 3) return f64x2(exp(f64x2.extract_lane(x, 0)), exp(f64x2.extract_lane(x, 1)));
+  const n = f64x2.sub(f64x2.add(f64x2.mul(x, two(PER_STEP)), two(ROUND)), two(ROUND));
+  const whole = i32x4.trunc_sat_f64x2_s_zero(n);
+  const r = f64x2.sub(f64x2.sub(x, f64x2.mul(n, two(STEP_HIGH))), f64x2.mul(n, two(STEP_LOW)));
+  const r2 = f64x2.mul(r, r);
+  const inner = f64x2.add(two(0.041666666666666664), f64x2.mul(r, two(0.008333333333333333)));
+  const outer = f64x2.add(f64x2.add(two(0.5), f64x2.mul(r, two(0.16666666666666666))), f64x2.mul(r2, inner));
+  const p = f64x2.add(r, f64x2.mul(r2, outer));
+  const a0 = i32x4.extract_lane(whole, 0);
+  const a1 = i32x4.extract_lane(whole, 1);
+  const entry0 = v128.load(EXP_TABLE + (<usize>(a0 & 127) << 4));
+  const entry1 = v128.load(EXP_TABLE + (<usize>(a1 & 127) << 4));
+  const t = v128.shuffle<i64>(entry0, entry1, 0, 2);
+  const lost = v128.shuffle<i64>(entry0, entry1, 1, 3);
+  const mantissa = f64x2.add(t, f64x2.add(f64x2.mul(t, p), lost));
+  const scales = f64x2(
+    load<f64>(POWER_OF_TWO + (<usize>((a0 >> 7) + 1023) << 3)),
+    load<f64>(POWER_OF_TWO + (<usize>((a1 >> 7) + 1023) << 3)),
+  );
+  return f64x2.mul(mantissa, scales);
 }
 
 /** DRAW[i] = exp(own·DRAW[i] + shift). */
 export function shocks(count: i32, own: f64, shift: f64): void {
-  for (let i = 0; i < count; i++) {
+  for (let i = 0; i < count; i += 2) {
     const at = DRAW + (<usize>i << 3);
-    store<f64>(at, exp(own * load<f64>(at) + shift));
+    v128.store(at, exps(f64x2.add(f64x2.mul(two(own), v128.load(at)), two(shift))));
   }
 }
 
 /** DRAW[i] = exp(shared·COMMON[i] + own·DRAW[i] + shift). */
 export function sharedShocks(count: i32, own: f64, shared: f64, shift: f64): void {
-  for (let i = 0; i < count; i++) {
+  for (let i = 0; i < count; i += 2) {
     const at = DRAW + (<usize>i << 3);
-    store<f64>(at, exp(shared * load<f64>(COMMON + (<usize>i << 3)) + own * load<f64>(at) + shift));
+    const common = f64x2.mul(two(shared), v128.load(COMMON + (<usize>i << 3)));
+    const x = f64x2.add(f64x2.add(common, f64x2.mul(two(own), v128.load(at))), two(shift));
+    v128.store(at, exps(x));
+  }
+}
+
+/** Choices by the growth table in GROWTH: growth-table.ts. */
+export function chooseByTable(count: i32, cells: i32, threshold_: f64, low: f64, grossReturn: f64): void {
+  const last = cells - 1;
+  for (let i = 0; i < count; i++) {
+    const at = <usize>i << 3;
+    const y = load<f64>(WEALTH + at);
+    const aim = load<f64>(ASPIRATION + at);
+    const q = aim / y;
+    let z: f64;
+    if (q > threshold_) {
+      z = low * y;
+      store<u8>(MET + <usize>i, 0);
+    } else {
+      const position = ((q > 0 ? q : 0) / threshold_) * <f64>cells;
+      let cell = <i32>position;
+      if (cell > last) cell = last;
+      const x = position - <f64>cell;
+      const from = GROWTH + <usize>cell * 48;
+      z =
+        (load<f64>(from) +
+          x *
+            (load<f64>(from, 8) +
+              x *
+                (load<f64>(from, 16) +
+                  x * (load<f64>(from, 24) + x * (load<f64>(from, 32) + x * load<f64>(from, 40)))))) *
+        y;
+      if (z < aim) z = aim;
+      store<u8>(MET + <usize>i, 1);
+    }
+    store<f64>(PLANNED + at, z);
+    store<f64>(INVESTMENT + at, z / grossReturn);
+  }
+}
+
+/** CONSUMPTION, CHILD_WEALTH and REACHED from the choice and the shocks in DRAW. */
+export function outcome(count: i32, milestones_: i32): void {
+  for (let i = 0; i < count; i++) {
+    const at = <usize>i << 3;
+    store<f64>(CONSUMPTION + at, load<f64>(WEALTH + at) - load<f64>(INVESTMENT + at));
+    const child = load<f64>(PLANNED + at) * load<f64>(DRAW + at);
+    store<f64>(CHILD_WEALTH + at, child);
+    let reached: i32 = 0;
+    for (let m = 0; m < milestones_; m++) {
+      reached += <i32>(child >= load<f64>(ASPIRATION + <usize>m * COLUMN + at));
+    }
+    store<u8>(REACHED + <usize>i, <u8>reached);
   }
 }
 
@@ -285,11 +402,12 @@ export function setProblem(
   milestones = milestones_;
 }
 
-// the answer of one household, and φ′ of the last evaluation
+// the answer of one household, and φ′ and φ″ of the last evaluation
 let planned: f64 = 0;
 let investment: f64 = 0;
 let met: i32 = 0;
 let slope: f64 = 0;
+let curvature: f64 = 0;
 
 @inline
 function a(m: i32): f64 {
@@ -364,59 +482,70 @@ function utilityAt(c: f64, z: f64, delta: f64, count: i32): f64 {
 function evaluate(k: f64, z: f64, y: f64, delta: f64, count: i32): f64 {
   let marginal = scale;
   let bend: f64 = 0;
+  let bendSlope: f64 = 0;
   if (!linear) {
     const power = (alpha * (z - kept * k)) / k;
     marginal = power + kept;
     bend = ((alpha - 1) * power) / (k * marginal);
+    bendSlope = bend * ((alpha - 2) / k - bend);
   }
   let s = exp(-sigma * log(z));
   let fall = (sigma * s) / z;
+  let fall2 = ((sigma + 1) * fall) / z;
   for (let m = 0; m < count; m++) {
     const above = z - a(m);
     if (!(above > 0)) {
       if (pi(m) == 0) continue;
       slope = Infinity;
+      curvature = 0;
       return k - y;
     }
     const term = pi(m) * exp(-eta * log(above));
+    const first = (eta * term) / above;
     s += term;
-    fall += (eta * term) / above;
+    fall += first;
+    fall2 += ((eta + 1) * first) / above;
   }
   const p = exp(log(delta * marginal * s) / -sigma);
-  slope = 1 - (p / sigma) * (bend - (marginal * fall) / s);
+  const drop = (marginal * fall) / s;
+  const l = (drop - bend) / sigma;
+  const l2 = (drop * (drop + bend) - (marginal * marginal * fall2) / s - bendSlope) / sigma;
+  slope = 1 + p * l;
+  curvature = p * (l * l + l2);
   return p - (y - k);
 }
 
-function start(low: f64, high: f64, y: f64, delta: f64, count: i32): f64 {
+function start(low: f64, high: f64, atHigh: f64, y: f64, delta: f64, count: i32): f64 {
+  let k = atHigh > 0 ? low + ((high - low) * (y - low)) / (y - low + atHigh) : 0.5 * (low + high);
   if (linear && eta == sigma) {
     const kappa = exp(log(delta * scale) / sigma);
-    let k = y / (1 + scale / kappa);
+    const bare = y / (1 + scale / kappa);
+    if (bare > k || count == 0) k = bare;
     for (let m = 0; m < count; m++) {
       if (pi(m) == 0) continue;
       const kappaM = kappa * exp(log(pi(m)) / sigma);
       const alone = (a(m) + kappaM * y) / (scale + kappaM);
       if (alone > k) k = alone;
     }
-    if (k > low && k < high) return k;
   }
-  return 0.5 * (low + high);
+  return k > low && k < high ? k : 0.5 * (low + high);
 }
 
-function root(low: f64, high: f64, y: f64, delta: f64, count: i32): f64 {
+function root(low: f64, high: f64, atHigh: f64, y: f64, delta: f64, count: i32): f64 {
   const from = low;
-  let k = start(low, high, y, delta, count);
+  let k = start(low, high, atHigh, y, delta, count);
   let lastMove = high - low;
   for (let step = 0; step < 200; step++) {
     const value = evaluate(k, childWealth(k), y, delta, count);
     if (value == 0) return k;
     if (value < 0) low = k;
     else high = k;
-    let next = k - value / slope;
-    let move = next - k;
-    const size = abs(move);
-    const room = min(k - from, y - k);
-    if (size <= 1e-8 * room && next > low && next < high) return next;
-    if (!(next > low && next < high) || size > 0.7 * lastMove) {
+    let move = -value / slope;
+    const bendBy = 1 - (0.5 * value * curvature) / (slope * slope);
+    if (bendBy > 0.2 && bendBy < 5) move /= bendBy;
+    let next = k + move;
+    if (abs(move) <= 1e-4 * min(k - from, y - k)) return next < low ? low : next > high ? high : next;
+    if (!(next > low && next < high) || abs(move) > 0.7 * lastMove) {
       next = 0.5 * (low + high);
       move = next - k;
     }
@@ -438,17 +567,19 @@ function solveThreshold(y: f64, delta: f64): void {
     if (lower >= reach) break;
     if (!(upper > lower) || upper <= 0) continue;
     let kHigh = y;
+    let atHigh: f64 = 0;
     if (upper < reach) {
       kHigh = investmentFor(upper);
       if (!(kHigh > 1e-200 * y)) continue;
-      if (evaluate(kHigh, upper, y, delta, j) < 0) {
+      atHigh = evaluate(kHigh, upper, y, delta, j);
+      if (atHigh < 0) {
         kLow = kHigh;
         continue;
       }
     }
     const bare = kLow > 0 && pi(j - 1) == 0;
     if (!bare || evaluate(kLow, lower, y, delta, j) < 0) {
-      const k = root(kLow, kHigh, y, delta, j);
+      const k = root(kLow, kHigh, atHigh, y, delta, j);
       let z = childWealth(k);
       if (z < lower) z = lower;
       let count = j;
@@ -480,10 +611,12 @@ function solveGainLoss(y: f64, delta: f64): void {
     for (let m = 0; m < M; m++) factor += m < j ? pi(m) : lambda * pi(m);
     const weight = delta * factor;
     let kHigh = y;
+    let atHigh: f64 = 0;
     if (upper < reach) {
       kHigh = investmentFor(upper);
       if (!(kHigh > 1e-200 * y)) continue;
-      if (evaluate(kHigh, upper, y, weight, 0) < 0) {
+      atHigh = evaluate(kHigh, upper, y, weight, 0);
+      if (atHigh < 0) {
         kLow = kHigh;
         continue;
       }
@@ -494,7 +627,7 @@ function solveGainLoss(y: f64, delta: f64): void {
       k = kLow;
       z = lower;
     } else {
-      k = root(kLow, kHigh, y, weight, 0);
+      k = root(kLow, kHigh, atHigh, y, weight, 0);
       z = childWealth(k);
       if (z < lower) z = lower;
       if (z > upper) z = upper;
