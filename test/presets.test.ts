@@ -220,7 +220,7 @@ describe('valley-survey', () => {
     expect(z(1, 'as surveyed')).toBeGreaterThan(z(1, 'mixed') + 3);
     expect(z(1, 'as surveyed')).toBeGreaterThan(7);
     for (const name of ['as surveyed', 'mixed']) {
-      for (let t = 5; t < 12; t++) expect(Math.abs(share(t, name) - 0.52)).toBeLessThan(0.12);
+      for (let t = 5; t < 18; t++) expect(Math.abs(share(t, name) - 0.53)).toBeLessThan(0.12);
     }
   });
 });
