@@ -287,6 +287,27 @@ describe('files', () => {
     await expect.poll(state).toContain('Ready to run: 3 households');
   });
 
+  test('what a run found stays said until the next edit, beside what the files say', async () => {
+    await drop([
+      { name: 'people.csv', body: HOUSEHOLDS.replaceAll(',up,', ',lowland,').replaceAll(',down,', ',upland,') },
+    ]);
+    await page.getByRole('button', { name: 'use as the households' }).click();
+    await expect.poll(state).toContain('Ready to run: 3 households');
+    await page.evaluate(() => {
+      const { page: own } = window as unknown as { page: SheetPage };
+      own.reopen();
+      own.sheet.report([
+        { code: 'out-of-reach', place: 'arms[1].network.mixing', problem: 'cannot be reached', remedy: 'try less' },
+      ]);
+    });
+    // longer than the files take to be read again
+    await page.waitForTimeout(700);
+    expect(await state()).toContain('1 problem');
+    expect(await words(page.locator('.fault-list'))).toMatch(/^line \d+ cannot be reached; try less$/);
+    await page.locator('#set-generations').fill('4');
+    await expect.poll(state).toContain('Ready to run: 3 households');
+  });
+
   test('a study file dropped replaces the text; undo brings it back', async () => {
     await drop([{ name: 'other.yaml', body: SAMPLE.replace('Two valleys', 'Three rivers') }]);
     await expect.poll(() => page.locator('#set-study').inputValue()).toBe('Three rivers');

@@ -53,6 +53,9 @@ export interface SheetState {
 /** Edits of sheets that were closed without running, by the study they were opened on: closing loses nothing. */
 const unfinished = new Map<string, { readonly yaml: string; readonly files: ReadonlyMap<string, Uint8Array> }>();
 
+/** Milliseconds without a keystroke after which files are read again. */
+const PAUSE = 250;
+
 const IDLE: SheetEvents = { close: () => {}, run: () => {}, save: () => {}, changed: () => {} };
 
 /** Opens a sheet on a study's text. */
@@ -75,13 +78,24 @@ class Sheet implements SheetState {
   readonly #editor: YamlEditor;
   #first: string;
   #draft: Draft;
-  /** Problems of files and of building, which come later than those of the text. */
+  /** Problems of files, which come later than those of the text. */
   #later: readonly Fault[] = [];
+  /** Problems of a run, until the next edit. */
+  #reported: readonly Fault[] = [];
   #readings: readonly Reading[] = [];
   #at: Path | null = null;
   #said = '';
   #dropping = false;
+  /** Counts readings, so that a slower one does not overtake. */
   #reading = 0;
+  #pause = 0;
+  readonly #decoded = new WeakMap<Uint8Array, string | null>();
+  /** What was read last, and whether nothing was wrong with it. */
+  #read: { readonly way: string; readonly files: readonly Uint8Array[]; readonly right: boolean } = {
+    way: '',
+    files: [],
+    right: false,
+  };
 
   constructor(yaml: string, files: ReadonlyMap<string, Uint8Array>) {
     this.files = new Map(files);
@@ -133,12 +147,14 @@ class Sheet implements SheetState {
   }
 
   report(problems: readonly Problem[]): void {
-    this.#later = faultsOf(this.#draft, problems);
+    this.#reported = faultsOf(this.#draft, problems);
     this.#editor.show(this.#faults);
     this.#render();
   }
 
   close(): void {
+    clearTimeout(this.#pause);
+    this.#reading++;
     if (this.edited) unfinished.set(this.#first, { yaml: this.yaml, files: this.files });
     else unfinished.delete(this.#first);
     this.#editor.close();
@@ -146,15 +162,16 @@ class Sheet implements SheetState {
   }
 
   get #faults(): readonly Fault[] {
-    return [...this.#draft.faults, ...this.#later];
+    return [...this.#draft.faults, ...this.#later, ...this.#reported];
   }
 
   #changed(text: string): void {
     this.#draft = draftOf(text, this.#draft);
     this.#later = [];
+    this.#reported = [];
     this.#editor.show(this.#draft.faults);
     this.#said = '';
-    this.#readFiles();
+    this.#readSoon();
     this.#render();
     this.events.changed();
   }
@@ -266,22 +283,57 @@ class Sheet implements SheetState {
     this.events.changed();
   }
 
+  /** Text of the files at hand that are text, decoded once. */
   #texts(): Map<string, string> {
     const texts = new Map<string, string>();
     for (const [name, bytes] of this.files) {
-      try {
-        texts.set(name, new TextDecoder('utf-8', { fatal: true }).decode(bytes));
-      } catch {
-        // said as a problem of the file
+      let text = this.#decoded.get(bytes);
+      if (text === undefined) {
+        try {
+          text = new TextDecoder('utf-8', { fatal: true }).decode(bytes);
+        } catch {
+          // said as a problem of the file
+          text = null;
+        }
+        this.#decoded.set(bytes, text);
       }
+      if (text !== null) texts.set(name, text);
     }
     return texts;
   }
 
+  /** What of the study decides how its files are read; the files themselves by their place in `#decoded`. */
+  #wayOfReading(): string {
+    const { study } = this.#draft;
+    if (study === null) return 'no study';
+    const { households, households_file, wealth, groups } = study.population;
+    return JSON.stringify([
+      households,
+      households_file,
+      wealth?.sample,
+      groups?.map(({ name }) => name),
+      study.arms.map(({ network }) => network),
+    ]);
+  }
+
+  /** Reads the files again once the writer pauses: a large one takes longer than a keystroke. */
+  #readSoon(): void {
+    clearTimeout(this.#pause);
+    if (this.files.size === 0 && this.#readings.length === 0) this.#readFiles();
+    else this.#pause = window.setTimeout(() => this.#readFiles(), PAUSE);
+  }
+
   /** Reads every file at hand; those the study names also as a run would, so that all its problems show. */
   #readFiles(): void {
-    const texts = this.#texts();
+    clearTimeout(this.#pause);
     const { study, parsed } = this.#draft;
+    const way = this.#wayOfReading();
+    const files = [...this.files.values()];
+    const same = way === this.#read.way && files.every((bytes, k) => bytes === this.#read.files[k]);
+    // positions in the text move with every edit, so problems are found anew
+    if (same && files.length === this.#read.files.length && this.#read.right) return;
+    this.#read = { way, files, right: false };
+    const texts = this.#texts();
     this.#readings = [...this.files.keys()].map((name) => {
       const text = texts.get(name);
       if (text !== undefined) return readingOf(name, text, study, texts);
@@ -293,10 +345,12 @@ class Sheet implements SheetState {
       };
       return { name, role: 'unknown', used: false, facts: [], problems: [problem] };
     });
+    this.#render();
     const turn = ++this.#reading;
     if (parsed === null || filesOf(parsed.study).length === 0) return;
     const later = (problems: readonly Problem[]): void => {
       if (turn !== this.#reading) return;
+      this.#read = { ...this.#read, right: problems.length === 0 };
       this.#later = faultsOf(this.#draft, problems);
       this.#editor.show(this.#faults);
       this.#render();
@@ -327,6 +381,7 @@ class Sheet implements SheetState {
         ),
       );
     }
+    this.#readFiles();
   }
 
   /** Column names of a table at hand. */
