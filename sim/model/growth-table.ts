@@ -8,6 +8,7 @@
  * (a spread of δ) go through the solver of planned.ts.
  */
 import { exp, log } from '../../network/elementary.js';
+import type { Kernel } from '../kernel/kernel.js';
 import type { Choice, Peak } from './choice.js';
 import { PlannedChoice } from './planned.js';
 import type { Preferences, Technology } from './types.js';
@@ -85,6 +86,11 @@ export class GrowthTableChoice implements Choice {
       this.met = 1;
     }
     this.investment = this.planned / this.grossReturn;
+  }
+
+  /** Gives the kernel the table, for `chooseByTable` calls that give the same plans as `solve`. */
+  prepare(compiled: Kernel): void {
+    compiled.growth.set(this.coefficients);
   }
 
   objective(wealth: number, z: number, aspirations: ArrayLike<number>, childWeight: number): number {

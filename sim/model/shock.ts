@@ -4,7 +4,7 @@
  * Draws are functions of household, place and generation (random/draws.ts): arms of a study share them.
  */
 import { exp } from '../../network/elementary.js';
-import { CHUNK, kernel } from '../kernel/kernel.js';
+import { CHUNK, type Kernel, kernel } from '../kernel/kernel.js';
 import type { Draws } from '../random/draws.js';
 import type { Households, Shock } from './types.js';
 
@@ -20,6 +20,71 @@ export function drawShocks(
   generation: number,
   out: Float64Array,
 ): void {
+  const n = out.length;
+  const common = placeShocks(shock, households, draws, generation);
+  const compiled = kernel();
+  if (compiled === null) {
+    plainShocks(shock, households, common, draws, generation, out);
+    return;
+  }
+  for (let first = 0; first < n; first += CHUNK) {
+    const count = Math.min(CHUNK, n - first);
+    shockChunk(compiled, shock, households, common, draws, generation, first, count);
+    out.set(count === CHUNK ? compiled.draws : compiled.draws.subarray(0, count), first);
+  }
+}
+
+/** ξ of every place in a generation, or null when places share no luck. */
+export function placeShocks(
+  shock: Shock,
+  households: Households,
+  draws: Draws,
+  generation: number,
+): Float64Array | null {
+  if (!(shock.sdLog > 0 && shock.sharedByPlace > 0)) return null;
+  const common = new Float64Array(households.places);
+  draws.normals('placeShock', generation, common);
+  return common;
+}
+
+/** Leaves ε of households first … first + count − 1 in the kernel's `draws`; `first` a multiple of CHUNK. */
+export function shockChunk(
+  compiled: Kernel,
+  shock: Shock,
+  households: Households,
+  common: Float64Array | null,
+  draws: Draws,
+  generation: number,
+  first: number,
+  count: number,
+): void {
+  const s = shock.sdLog;
+  if (!(s > 0)) {
+    compiled.draws.fill(1);
+    return;
+  }
+  const shift = -0.5 * s * s;
+  const own = s * Math.sqrt(1 - shock.sharedByPlace);
+  draws.chunk(compiled, true, 'householdShock', generation, first, count);
+  if (common === null) {
+    compiled.call.shocks(count, own, shift);
+    return;
+  }
+  const place = households.place;
+  const column = compiled.common;
+  for (let i = 0; i < count; i++) column[i] = common[place[first + i]];
+  compiled.call.sharedShocks(count, own, s * Math.sqrt(shock.sharedByPlace), shift);
+}
+
+/** The same shocks without the kernel. */
+export function plainShocks(
+  shock: Shock,
+  households: Households,
+  common: Float64Array | null,
+  draws: Draws,
+  generation: number,
+  out: Float64Array,
+): void {
   const s = shock.sdLog;
   const n = out.length;
   if (!(s > 0)) {
@@ -29,28 +94,10 @@ export function drawShocks(
   const shift = -0.5 * s * s;
   const own = s * Math.sqrt(1 - shock.sharedByPlace);
   const shared = s * Math.sqrt(shock.sharedByPlace);
-  const place = households.place;
-  let common: Float64Array | null = null;
-  if (shared > 0) {
-    common = new Float64Array(households.places);
-    draws.normals('placeShock', generation, common);
-  }
-  const compiled = kernel();
-  if (compiled === null) {
-    draws.normals('householdShock', generation, out);
-    if (common === null) for (let i = 0; i < n; i++) out[i] = exp(own * out[i] + shift);
-    else for (let i = 0; i < n; i++) out[i] = exp(shared * common[place[i]] + own * out[i] + shift);
-    return;
-  }
-  for (let first = 0; first < n; first += CHUNK) {
-    const count = Math.min(CHUNK, n - first);
-    draws.chunk(compiled, true, 'householdShock', generation, first, count);
-    if (common === null) compiled.call.shocks(count, own, shift);
-    else {
-      const column = compiled.common;
-      for (let i = 0; i < count; i++) column[i] = common[place[first + i]];
-      compiled.call.sharedShocks(count, own, shared, shift);
-    }
-    out.set(count === CHUNK ? compiled.draws : compiled.draws.subarray(0, count), first);
+  draws.normals('householdShock', generation, out);
+  if (common === null) for (let i = 0; i < n; i++) out[i] = exp(own * out[i] + shift);
+  else {
+    const place = households.place;
+    for (let i = 0; i < n; i++) out[i] = exp(shared * common[place[i]] + own * out[i] + shift);
   }
 }
