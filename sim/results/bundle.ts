@@ -22,7 +22,7 @@ export interface BundleOptions {
   /** Other files, by name. */
   readonly files?: Readonly<Record<string, string>>;
   /** Files made from the tables once they and the codebook are there, such as estimates and the report. */
-  readonly add?: (results: Results) => Promise<Readonly<Record<string, string>>>;
+  readonly add?: (results: Results, write: (name: string, text: string) => void) => Promise<void>;
   readonly end: ManifestEnd;
 }
 
@@ -51,7 +51,7 @@ export async function bundle(
   for (const [name, text] of Object.entries(options.files ?? {})) writeAll(store, name, text);
   if (options.add !== undefined) {
     const results = new Results(memorySource(store.files), partialManifest(head), JSON.parse(book.json) as Codebook);
-    for (const [name, text] of Object.entries(await options.add(results))) writeAll(store, name, text);
+    await options.add(results, (name, text) => writeAll(store, name, text));
   }
   const files = [];
   for (const [name, bytes] of store.files) files.push({ name, bytes: bytes.length, sha256: await sha256(bytes) });

@@ -146,9 +146,10 @@ async function assembleParts(whole: Prepared, parts: Files, replicates: number, 
     // estimates and report tell of the whole study, not of the first replicate
     ...(replicates === whole.study.replicates
       ? {
-          add: async (results) => {
+          add: async (results, write) => {
             const { files: estimates } = await studyEstimates(study, results, 'the results', () => 'study');
-            return { ...estimates, 'report.html': await reportHtml(results, notes) };
+            for (const [name, text] of Object.entries(estimates)) write(name, text);
+            write('report.html', await reportHtml(results, notes));
           },
         }
       : {}),

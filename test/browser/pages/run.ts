@@ -19,6 +19,8 @@ export interface RunPage {
   run(yaml: string, files: Readonly<Record<string, string>>, workers: number, cancelAt?: number): Promise<Told>;
   /** Frustrated households of an arm and generation, from the last source that arrived. */
   frustrated(arm: number, replicate: number, generation: number): Promise<number>;
+  /** A file of the last results, as text. */
+  text(name: string): Promise<string>;
   /** Digest of the panel as it would be saved as CSV. */
   savedCsv(): Promise<string>;
 }
@@ -69,6 +71,9 @@ const page: RunPage = {
   async frustrated(arm, replicate, generation) {
     const { met } = await lastSource().snapshot(arm, replicate, generation);
     return met.reduce((sum, count) => sum + (count === 0 ? 1 : 0), 0);
+  },
+  async text(name) {
+    return new TextDecoder().decode(await lastSource().file(name));
   },
   async savedCsv() {
     return digest(await (await panelCsv(lastSource())).arrayBuffer());
