@@ -74,6 +74,12 @@ const SHORTEST = 4;
 const STILL = 0.01;
 /** Scatter around a straight line, and drift over the window, relative to the level, that luck may account for. */
 const LUCK = 0.05;
+/** Roughness, relative to the level, from which steps are noisy. */
+const NOISE = 0.01;
+/** Fewest generations from which a noisy movement can be carried on. */
+const NOISY_SHORTEST = 7;
+/** Standard errors by which a noisy trend must stand out to be carried on. */
+const CLEAR = 4;
 /** A spread has all but gone when this share of it is left, of the start's, or of today's once the fall has run out. */
 const LEFT_OVER = 0.05;
 /** A rise goes on when at least this much of today's spread is still to come. */
@@ -173,6 +179,13 @@ export function classifyRegime(series: readonly RegimeObservation[]): RegimeVerd
     if (Math.abs(evidence.levelTrend) > STILL || !agreed) return verdict('settled');
     return verdict(common >= 2 ? 'settled, two or more modes' : 'settled, one mode');
   }
+  // steps of a few noisy generations say nothing of how a movement goes on
+  const path = spreadLine.slope < 0 ? spread.map(log) : spread.map((s) => s / meanSpread);
+  const noisy = roughness(path) > NOISE;
+  if (noisy && (window.length < NOISY_SHORTEST || Math.abs(spreadLine.slope) <= CLEAR * spreadLine.se)) {
+    const wanted = Math.ceil(1.5 * Math.max(NOISY_SHORTEST, window.length + 2));
+    return verdict('undecided', { moreGenerations: Math.max(1, wanted - last) });
+  }
   if (spreadLine.slope < 0) {
     // toward 0: in logs, where a fall at a steady rate has equal steps
     const pace = paceOf(spread.map(log));
@@ -197,6 +210,16 @@ function trendOf(values: readonly number[]): { slope: number; se: number; scatte
     squares += residual * residual;
   }
   return { slope, se, scatter: Math.sqrt(squares / values.length) };
+}
+
+/** Standard deviation of the noise on a smooth path, from its third differences (white noise: their variance is 20 σ²). */
+function roughness(path: readonly number[]): number {
+  let squares = 0;
+  for (let k = 3; k < path.length; k++) {
+    const third = path[k] - 3 * path[k - 1] + 3 * path[k - 2] - path[k - 3];
+    squares += third * third;
+  }
+  return Math.sqrt(squares / (path.length - 3) / 20);
 }
 
 /** How the steps of a series develop. */
