@@ -115,7 +115,8 @@ export function estimatesSection(file: EstimatesFile, arms: readonly string[]): 
 function one(summaries: readonly Summary[], regressions: readonly Regression[], arms: readonly string[]): string {
   const first = regressions[0];
   const { name, method, outcome } = summaries[0];
-  const pooled = summaries.length === 1 && !arms.includes(summaries[0].arm ?? '');
+  // one arm needs no name in every row
+  const pooled = summaries.length === 1 && (arms.length === 1 || !arms.includes(summaries[0].arm ?? ''));
   const replicates = Math.max(...summaries.map((summary) => summary.replicates));
   const effects = Object.keys(first.absorbed);
   const clusters = Object.keys(first.clusters_by);
@@ -202,11 +203,11 @@ function summaryTable(name: string, summaries: readonly Summary[], pooled: boole
     num(term.mean_std_error),
     pct(term.rejects_zero),
     ...(effects ? [num(effectOf(arm, term.term))] : []),
-    ...(known ? [num(term.truth), pct(term.coverage)] : []),
+    ...(known ? [pct(term.coverage)] : []),
   ]);
   return table(
     `${name}, over replicates`,
-    [...head, ...(effects ? ['effect on chance'] : []), ...(known ? ['truth', 'covered in'] : [])],
+    [...head, ...(effects ? ['effect on chance'] : []), ...(known ? ['truth held in'] : [])],
     rows,
     pooled ? {} : { words: [1] },
   );

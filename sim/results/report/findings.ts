@@ -144,7 +144,11 @@ function frustration(e: Evidence): Section {
   const words = series.map((s) => {
     let top = 0;
     for (let t = 1; t <= last; t++) if (s.y[t] > s.y[top]) top = t;
-    return `in ${quoted(s.name)} ${pct(s.y[0])} of households are frustrated at the start, ${pct(s.y[top])} at the peak in generation ${top} and ${pct(s.y[last])} in generation ${last}`;
+    const start = `in ${quoted(s.name)} ${pct(s.y[0])} of households are frustrated at the start`;
+    const end = `${pct(s.y[last])} in generation ${last}`;
+    return top === 0 || top === last
+      ? `${start}${top === 0 ? ', the most,' : ''} and ${end}${top === 0 ? '' : ', the most'}`
+      : `${start}, ${pct(s.y[top])} at the peak in generation ${top} and ${end}`;
   });
   const clustered = has(e, 'join_count_z') ? seriesOf(e, 'join_count_z', 0, last) : null;
   const t = e.telling;

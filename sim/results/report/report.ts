@@ -16,7 +16,7 @@ import { page } from './page.js';
 import { tablesSection } from './tables.js';
 import { bullets, count, list, num, p, table, typographic } from './words.js';
 
-/** Sentences of the answer in large type. */
+/** Sentences of the answer in large type, at most: those before the ones on pockets. */
 const FIRST = 2;
 
 /** Said besides the answer's own cautions. */
@@ -64,12 +64,14 @@ export async function reportHtml(results: Results, notes?: Readonly<Record<strin
 
 function head(e: Evidence): string {
   const { answer, study } = e;
+  const pockets = answer.words.findIndex((words) => words.includes('pocket'));
+  const first = Math.max(1, Math.min(FIRST, pockets < 0 ? FIRST : pockets));
   return (
     p('Report on a simulated study', 'kicker') +
     `<h1>${safe(study.study)}</h1>` +
     p(typographic(answer.question), 'question') +
-    p(typographic(answer.words.slice(0, FIRST).join(' ')), 'answer') +
-    (answer.words.length > FIRST ? p(typographic(answer.words.slice(FIRST).join(' '))) : '') +
+    p(typographic(answer.words.slice(0, first).join(' ')), 'answer') +
+    (answer.words.length > first ? p(typographic(answer.words.slice(first).join(' '))) : '') +
     p(answer.setting, 'setting') +
     `<div class="caution">${answer.cautions.map((line) => p(line)).join('')}</div>`
   );

@@ -242,6 +242,12 @@ describe('the report of a study of two arms', () => {
     expect(added.estimates?.summary.map(({ name }) => name)).toEqual(['Gap and growth', 'Gap and growth', 'Mixed arm']);
     const names = [...page.querySelectorAll('.estimate h3')].map(textOf);
     expect(names).toEqual(['Gap and growth', 'Mixed arm']);
+    for (const table of page.querySelectorAll('table')) {
+      const widths = [...table.querySelectorAll('tr')].map((row) =>
+        [...row.querySelectorAll('th, td')].reduce((sum, at) => sum + Number(at.getAttribute('colspan') ?? 1), 0),
+      );
+      expect(new Set(widths).size, textOf(table.querySelector('caption') as Element)).toBe(1);
+    }
     const terms = [...(page.querySelector('.estimate') as Element).querySelectorAll('tbody th')].map(textOf);
     expect(terms).toEqual(['log wealth', 'aspiration gap', 'aspiration gap, squared'].flatMap((term) => [term, term]));
     expect(textOf(page.querySelectorAll('.estimate')[1])).toContain('The truth of arm: mixed is 0');
