@@ -139,9 +139,10 @@ export async function picture(stage: HTMLElement, texts: PictureTexts, palette: 
     written(draw, svg, box, family);
   };
   await layer('svg.under');
+  await layer('svg.tints');
   draw.drawImage(marks, 0, 0, box.width, box.height);
   await layer('svg.pyramid');
-  await layer('svg.over');
+  if (!stage.querySelector('svg.over')?.hasAttribute('hidden')) await layer('svg.over');
   fields.forEach((field, k) => {
     const r = field.getBoundingClientRect();
     const x = r.left - box.left + 0.9 * rem;

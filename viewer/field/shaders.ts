@@ -31,6 +31,7 @@ out vec4 vColour;
 out float vHole;
 out float vRadius;
 out float vHalo;
+out float vSharp;
 ${place}
 void main() {
   gl_Position = placed(aFrom, aTo);
@@ -38,8 +39,9 @@ void main() {
   vHole = mix(aShape.x, aShape.y, uGlide);
   vHalo = aShape.w * uHalo;
   float radius = uSize * (0.5 + 2.0 * aShape.z) * (1.0 + 0.34 * vHole) * uDensity;
-  float reach = radius * (aShape.w > 0.0 ? 2.0 : 1.0) + 1.0;
+  float reach = radius * (vHalo > 0.0 ? 2.0 : 1.0) + 1.0;
   vRadius = radius / reach;
+  vSharp = reach;
   gl_PointSize = 2.0 * reach;
 }
 `;
@@ -50,21 +52,24 @@ in vec4 vColour;
 in float vHole;
 in float vRadius;
 in float vHalo;
+in float vSharp;
 uniform vec4 uPaper;
 out vec4 outColour;
 void main() {
+  // distances in shares of the point's reach; edges are soft over one device pixel
   float d = length(gl_PointCoord * 2.0 - 1.0);
-  float soft = fwidth(d);
-  float disc = 1.0 - smoothstep(vRadius - soft, vRadius + soft * 0.25, d);
-  float inner = vRadius * 0.46 * smoothstep(0.0, 1.0, vHole);
-  float hole = vHole > 0.01 ? 1.0 - smoothstep(inner - soft * 0.6, inner + soft * 0.6, d) : 0.0;
+  float disc = clamp((vRadius - d) * vSharp + 0.5, 0.0, 1.0);
+  float inner = vRadius * 0.46 * vHole;
+  float hole = clamp((inner - d) * vSharp + 0.5, 0.0, 1.0) * step(0.01, vHole);
   vec4 ink = vec4(vColour.rgb, 1.0) * vColour.a;
   vec4 mark = mix(ink, uPaper * 0.8, hole) * disc;
-  // a thin circle round the mark: seen at once, then quiet
-  float at = vRadius + (1.0 - vRadius) * 0.66;
-  float halo = vHalo * (1.0 - smoothstep(soft * 0.35, soft * 1.1, abs(d - at)));
-  vec4 glow = vec4(vColour.rgb, 1.0) * halo;
-  outColour = mark + glow * (1.0 - mark.a);
+  if (vHalo > 0.0) {
+    // a thin circle round the mark: seen at once, then quiet
+    float at = vRadius + (1.0 - vRadius) * 0.66;
+    float halo = vHalo * clamp(1.0 - abs(d - at) * vSharp, 0.0, 1.0);
+    mark += vec4(vColour.rgb, 1.0) * halo * (1.0 - mark.a);
+  }
+  outColour = mark;
 }
 `;
 

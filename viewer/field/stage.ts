@@ -51,6 +51,7 @@ export class Stage {
   #fields: readonly [Field, Field];
   #wealth: HTMLElement;
   #under: SVGSVGElement;
+  #tints: SVGSVGElement;
   #over: SVGSVGElement;
   #pyramid: SVGSVGElement;
   #events: StageEvents;
@@ -92,6 +93,7 @@ export class Stage {
     this.#fields = [field('.field-left'), field('.field-right')];
     this.#wealth = part('.wealth');
     this.#under = part('svg.under');
+    this.#tints = part('svg.tints');
     this.#over = part('svg.over');
     this.#pyramid = part('svg.pyramid');
     canvas.onRestored = () => {
@@ -218,7 +220,7 @@ export class Stage {
     if (stage.width < 10 || stage.height < 10) return;
     this.#rem = Number.parseFloat(getComputedStyle(document.documentElement).fontSize) || 13;
     this.#canvas.resize(stage.width, stage.height);
-    for (const svgLayer of [this.#under, this.#over]) {
+    for (const svgLayer of [this.#under, this.#tints, this.#over]) {
       svgLayer.setAttribute('viewBox', `0 0 ${stage.width} ${stage.height}`);
     }
     for (const f of this.#fields) {
@@ -228,6 +230,7 @@ export class Stage {
     const scene = this.#scene;
     this.#camera = REST;
     this.#cameraStart = -1;
+    this.#tintKey = '';
     if (scene !== null) {
       this.#glide = 1;
       this.#glideStart = -1;
@@ -380,8 +383,16 @@ export class Stage {
     if (moving) this.#ask();
     else if (this.#wasMoving) this.#ask();
     else if (this.#arrived >= 0) {
-      if (now - this.#arrived >= FADE) this.#arrived = -1;
-      this.#ask();
+      if (now - this.#arrived >= FADE) {
+        this.#arrived = -1;
+        this.#ask();
+      } else if (this.#fade === 0) {
+        // a halo grows quiet in steps: nothing moves, so few frames do
+        this.#fade = window.setTimeout(() => {
+          this.#fade = 0;
+          this.#ask();
+        }, 110);
+      }
     }
     this.#wasMoving = moving;
   }
@@ -390,6 +401,11 @@ export class Stage {
   /** When the last glide ended; −1 before any. */
   #arrived = -1;
   #wasMoving = false;
+  #fade = 0;
+  #frame = 0;
+  #gridKey = '';
+  #tintKey = '';
+  #tinted: readonly [unknown, unknown] = [null, null];
 
   #draw(): void {
     const scene = this.#scene;
@@ -424,8 +440,12 @@ export class Stage {
         paper: Float32Array.of(pr / 255, pg / 255, pb / 255, 1),
       },
     );
-    this.#layers(scene, g);
-    this.#drawPyramid(scene, g);
+    this.#grid(scene);
+    this.#tint(scene);
+    this.#overlay(scene);
+    // half the frames do for bars: painting them costs as much as the marks
+    this.#frame++;
+    if (this.#glide >= 1 || this.#frame % 2 === 0) this.#drawPyramid(scene, g);
   }
 
   /** Halos are strong while marks arrive and quiet afterwards. */
@@ -467,13 +487,16 @@ export class Stage {
     return [px * zoom + x, py * zoom + y];
   }
 
-  #layers(scene: Scene, g: number): void {
-    const fresh = this.#glideStart >= 0 ? g * g : 1;
+  /** Lines at round wealths; redrawn only when the axis or the camera moved. */
+  #grid(scene: Scene): void {
+    const axis = this.#axisNow(scene);
+    const { zoom, y } = this.#camera;
+    const key = `${scene.arrangement}/${axis.low}/${axis.high}/${zoom}/${y}/${this.#fields[0].box.width}/${this.#fields[0].box.height}`;
+    if (key === this.#gridKey) return;
+    this.#gridKey = key;
     render(
       svg`${this.#fields.map((f, k) => {
         const area = this.#area(k);
-        const axis = this.#axisNow(scene);
-        const { zoom, x, y } = this.#camera;
         const lines =
           scene.arrangement === 'ladder'
             ? rungs(axis, Math.max(3, Math.floor(area.height / (5.2 * this.#rem)))).map((w) => {
@@ -481,20 +504,42 @@ export class Stage {
                 return svg`<line class="rung" x1="0.5" x2=${area.width - 1} y1=${py} y2=${py}></line>`;
               })
             : nothing;
-        const width = Math.max(0.9 * this.#rem, 1.15 * this.#rem * Math.min(2.4, zoom ** 0.7));
-        return svg`<svg x=${f.box.x} y=${f.box.y} width=${f.box.width} height=${f.box.height}>
-          ${lines}
-          <g transform="translate(${x} ${y}) scale(${zoom})">
-          ${f.sleeves.map((s) => {
-            const name = `sleeve${scene.pocket[k] === s.id ? ' chosen' : ''}`;
-            const strength = (scene.pocket[k] === s.id ? 2 : 1) * 0.17 * fresh;
-            return svg`<g opacity=${strength}><path class=${name} d=${s.body} stroke-width=${width / zoom}></path>
-              <path class=${name} d=${s.links} stroke-width=${(0.16 * width) / zoom}></path></g>`;
-          })}
-          </g></svg>`;
+        return svg`<svg x=${f.box.x} y=${f.box.y} width=${f.box.width} height=${f.box.height}>${lines}</svg>`;
       })}`,
       this.#under as unknown as HTMLElement,
     );
+  }
+
+  /** Pockets' tints: gone while marks glide, since they belong to where the marks arrive. */
+  #tint(scene: Scene): void {
+    this.#tints.classList.toggle('away', this.#glideStart >= 0);
+    const { zoom, x, y } = this.#camera;
+    const key = `${zoom}/${x}/${y}/${scene.pocket.join()}`;
+    if (key === this.#tintKey && this.#fields.every((f, k) => f.sleeves === this.#tinted[k])) return;
+    this.#tintKey = key;
+    this.#tinted = [this.#fields[0].sleeves, this.#fields[1].sleeves];
+    const width = Math.max(0.9 * this.#rem, 1.15 * this.#rem * Math.min(2.4, zoom ** 0.7));
+    render(
+      svg`${this.#fields.map(
+        (f, k) => svg`<svg x=${f.box.x} y=${f.box.y} width=${f.box.width} height=${f.box.height}>
+          <g transform="translate(${x} ${y}) scale(${zoom})">
+          ${f.sleeves.map((s) => {
+            const name = `sleeve${scene.pocket[k] === s.id ? ' chosen' : ''}`;
+            const strength = (scene.pocket[k] === s.id ? 2 : 1) * 0.17;
+            return svg`<g opacity=${strength}><path class=${name} d=${s.body} stroke-width=${width / zoom}></path>
+              <path class=${name} d=${s.links} stroke-width=${(0.16 * width) / zoom}></path></g>`;
+          })}
+          </g></svg>`,
+      )}`,
+      this.#tints as unknown as HTMLElement,
+    );
+  }
+
+  /** What lies over the marks. Without anything to show the layer is gone, and costs nothing. */
+  #overlay(scene: Scene): void {
+    const shown = scene.selected >= 0 || (this.#hover >= 0 && !this.busy);
+    this.#over.toggleAttribute('hidden', !shown);
+    if (!shown) return;
     render(
       svg`${this.#fields.map(
         (f, k) => svg`<svg x=${f.box.x} y=${f.box.y} width=${f.box.width} height=${f.box.height}>
@@ -655,7 +700,7 @@ export class Stage {
 
   /** Redraws only what lies over the marks: hovering never touches the card. */
   #hoverOnly(): void {
-    if (this.#scene !== null) this.#layers(this.#scene, ease(this.#glide));
+    if (this.#scene !== null) this.#overlay(this.#scene);
   }
 }
 
@@ -690,6 +735,7 @@ export function stageTemplate(
       <div class="field-foot">${footRight}</div>
     </div>
     <svg class="under" aria-hidden="true"></svg>
+    <svg class="tints" aria-hidden="true"></svg>
     <canvas class="marks" aria-hidden="true"></canvas>
     <svg class="over" aria-hidden="true"></svg>
   `;
