@@ -1,8 +1,8 @@
 /**
  * `estimate`: regressions on the panel of a results folder, or on a plain table.
  */
-import { existsSync, readFileSync, renameSync, statSync, writeFileSync } from 'node:fs';
-import { basename, dirname, join } from 'node:path';
+import { existsSync, readFileSync, statSync } from 'node:fs';
+import { basename, dirname } from 'node:path';
 import type { Command } from 'commander';
 import { InputError } from '../../network/errors.js';
 import type { FrameSource } from '../estimate/frame.js';
@@ -12,6 +12,7 @@ import { type Estimate, Estimate as EstimateSchema, type Placer, type Plan, pars
 import { planText } from '../estimate/print.js';
 import { type PlanResults, type RunOptions, runEstimates } from '../estimate/run.js';
 import { csvSource, parquetSource } from '../estimate/table.js';
+import { addFiles } from '../results/folder.js';
 import { folderSource, openResults } from '../results/open.js';
 
 interface Options {
@@ -120,12 +121,7 @@ export async function estimateFolder(
   const source = await panelSource(await openResults(folder), folder);
   const results = await runEstimates(estimates, source, place, options);
   const head = { source: folder, ...(options.plan === undefined ? {} : { plan: options.plan }) };
-  for (const [name, text] of Object.entries(estimateFiles(estimates, results, head))) {
-    // under another name first, so that a kill leaves no half file
-    const path = join(folder, name);
-    writeFileSync(`${path}.writing`, text);
-    renameSync(`${path}.writing`, path);
-  }
+  addFiles(folder, estimateFiles(estimates, results, head));
   return results;
 }
 

@@ -4,6 +4,7 @@
 import { renameSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import type { Command } from 'commander';
+import { addFiles } from '../results/folder.js';
 import { openResults } from '../results/open.js';
 import { reportHtml } from '../results/report/report.js';
 
@@ -30,9 +31,12 @@ export function reportCommand(program: Command): void {
     .action(async (folder: string, options: Options) => {
       const file = options.out ?? join(folder, REPORT);
       const html = await reportHtml(await openResults(folder));
-      // under another name first, so that a kill leaves no half file
-      writeFileSync(`${file}.writing`, html);
-      renameSync(`${file}.writing`, file);
+      if (options.out === undefined) addFiles(folder, { [REPORT]: html });
+      else {
+        // under another name first, so that a kill leaves no half file
+        writeFileSync(`${file}.writing`, html);
+        renameSync(`${file}.writing`, file);
+      }
       const bytes = Buffer.byteLength(html);
       if (options.json) console.log(JSON.stringify({ file, bytes }, null, 2));
       else console.log(`${file} (${Math.ceil(bytes / 1024)} KB): open it in a browser, print it or send it.`);

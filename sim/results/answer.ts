@@ -49,7 +49,10 @@ function points(x: number): string {
 }
 
 function decimals(x: number, digits: number): string {
-  return Number.isNaN(x) ? '–' : x.toFixed(digits).replace('-', '−');
+  if (Number.isNaN(x)) return '–';
+  const text = x.toFixed(digits);
+  // no minus before a number that rounds to nothing
+  return Number(text) === 0 ? text.replace('-', '') : text.replace('-', '−');
 }
 
 /** Gathers the answer of a finished study. @param lives - of the pockets in each arm, in the order of the arms */

@@ -315,3 +315,23 @@ export function resumeRun(
   }
   return new RunFolder(partial, out, manifest, false);
 }
+
+/**
+ * Puts files into a finished results folder, and their sizes and hashes into its manifest.
+ *
+ * @param files - text by name, in place of what is there under that name
+ */
+export function addFiles(dir: string, files: Readonly<Record<string, string>>): void {
+  const manifest = manifestIn(dir);
+  if (manifest === null)
+    refuse('no-such-results', dir, `no results are there (no ${MANIFEST})`, 'check the folder name');
+  const store = folderStore(dir);
+  const entries = new Map(manifest.files.map((file) => [file.name, file]));
+  for (const [name, text] of Object.entries(files)) {
+    const bytes = new TextEncoder().encode(text);
+    writeAll(store, name, bytes);
+    entries.set(name, { name, bytes: bytes.length, sha256: createHash('sha256').update(bytes).digest('hex') });
+  }
+  const sorted = [...entries.values()].sort((a, b) => (a.name < b.name ? -1 : 1));
+  writeAll(store, MANIFEST, manifestText({ ...manifest, files: sorted }));
+}

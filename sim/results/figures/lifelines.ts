@@ -53,7 +53,7 @@ export function lifelinesFigure(size: Size, moments: readonly PocketMoment[], o:
   for (const list of shown) {
     const y = lane.get(list[0].pocket) as number;
     const sorted = [...list].sort((a, b) => a.generation - b.generation);
-    const chance = !sorted.some((m) => m.pValue < level);
+    const chance = !sorted.some((m) => m.pValue <= level);
     let above = '';
     let below = '';
     const first = sorted[0];
