@@ -1,2 +1,2 @@
-/** Compiles assembly/kernel.ts; see compile.mjs. */
-export function compile(): Promise<Uint8Array>;
+/** Compiles a source in assembly/; see compile.mjs. */
+export function compile(name: 'kernel' | 'rows'): Promise<Uint8Array>;

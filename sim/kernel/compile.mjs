@@ -1,21 +1,27 @@
 /**
- * Compiles assembly/kernel.ts to bytes.ts: `node sim/kernel/compile.mjs`. A test compiles again and compares, so the two
- * cannot drift apart.
+ * Compiles the sources in assembly/ to bytes.ts: `node sim/kernel/compile.mjs`. A test compiles again and compares, so
+ * that they cannot drift apart.
  */
 import { readFileSync, writeFileSync } from 'node:fs';
 import asc from 'assemblyscript/asc';
 
-/** The module's bytes. */
-export async function compile() {
-  const source = readFileSync(new URL('assembly/kernel.ts', import.meta.url), 'utf8');
-  // three pages of memory, nothing of the compiler's own in it: the source places everything itself
-  const options = ['-O3', '--runtime', 'stub', '--noAssert', '--enable', 'simd'];
-  const memory = ['--initialMemory', '3', '--maximumMemory', '3', '--memoryBase', '190000'];
+/** Pages of memory and options of each source; neither has anything of the compiler's own in its memory. */
+const MEMORY = {
+  // three pages: the source places everything itself
+  kernel: ['--initialMemory', '3', '--maximumMemory', '3', '--memoryBase', '190000'],
+  // grows with the ties it holds
+  rows: ['--initialMemory', '2', '--memoryBase', '130000'],
+};
+
+/** The bytes of `kernel` or `rows`. */
+export async function compile(name) {
+  const source = readFileSync(new URL(`assembly/${name}.ts`, import.meta.url), 'utf8');
+  const options = ['-O3', '--runtime', 'stub', '--noAssert', '--enable', 'simd', ...MEMORY[name]];
   let bytes = new Uint8Array(0);
-  const { error, stderr } = await asc.main(['kernel.ts', '--outFile', 'kernel.wasm', ...options, ...memory], {
-    readFile: (name) => (name === 'kernel.ts' ? source : null),
-    writeFile: (name, contents) => {
-      if (name === 'kernel.wasm') bytes = contents;
+  const { error, stderr } = await asc.main([`${name}.ts`, '--outFile', `${name}.wasm`, ...options], {
+    readFile: (file) => (file === `${name}.ts` ? source : null),
+    writeFile: (file, contents) => {
+      if (file === `${name}.wasm`) bytes = contents;
     },
     listFiles: () => [],
   });
@@ -23,11 +29,16 @@ export async function compile() {
   return bytes;
 }
 
-if (process.argv[1] === new URL(import.meta.url).pathname) {
-  const text = Buffer.from(await compile()).toString('base64');
+async function constant(name) {
+  const text = Buffer.from(await compile(name)).toString('base64');
   const lines = text.match(/.{1,110}/g).map((line) => `  '${line}'`);
+  return `/** assembly/${name}.ts. */\nexport const ${name.toUpperCase()}_BYTES =\n${lines.join(' +\n')};\n`;
+}
+
+if (process.argv[1] === new URL(import.meta.url).pathname) {
+  const head = '/**\n * The compiled modules in base64, written by compile.mjs.\n */\n\n';
   writeFileSync(
     new URL('bytes.ts', import.meta.url),
-    `/** The compiled kernel in base64, written by compile.mjs. */\nexport const KERNEL_BYTES =\n${lines.join(' +\n')};\n`,
+    head + (await constant('kernel')) + '\n' + (await constant('rows')),
   );
 }

@@ -7,6 +7,7 @@
  */
 import { TABLES } from '../../network/elementary.js';
 import { KERNEL_BYTES } from './bytes.js';
+import { instantiate } from './host.js';
 
 /** Households a column of the kernel holds. */
 export const CHUNK = 1024;
@@ -70,12 +71,6 @@ interface Exports extends Calls {
   setConstants(ln2High: number, ln2Low: number, stepHigh: number, stepLow: number, perStep: number): void;
 }
 
-/** The part of the WebAssembly interface used here; libraries of types differ between hosts. */
-interface WebAssemblyHost {
-  readonly Module: new (bytes: Uint8Array) => object;
-  readonly Instance: new (module: object) => { readonly exports: unknown };
-}
-
 let instance: Kernel | null | undefined;
 
 /** This thread's kernel, made at the first call; null where the host does not allow it. */
@@ -85,15 +80,8 @@ export function kernel(): Kernel | null {
 }
 
 function makeKernel(): Kernel | null {
-  const host = (globalThis as unknown as { WebAssembly?: WebAssemblyHost }).WebAssembly;
-  if (host === undefined) return null;
-  let exports: Exports;
-  try {
-    exports = new host.Instance(new host.Module(fromBase64(KERNEL_BYTES))).exports as Exports;
-  } catch {
-    // forbidden by the host: not an error, only slower
-    return null;
-  }
+  const exports = instantiate<Exports>(KERNEL_BYTES);
+  if (exports === null) return null;
   const memory = exports.memory.buffer;
   // addresses of assembly/kernel.ts
   const column = (index: number): Float64Array => new Float64Array(memory, 24576 + index * CHUNK * 8, CHUNK);
@@ -117,17 +105,4 @@ function makeKernel(): Kernel | null {
     weights: new Float64Array(memory, 23616, 4),
     call: exports,
   };
-}
-
-function fromBase64(text: string): Uint8Array {
-  const alphabet = 'ABCDEFGHIJKLMNOPQRSTUVWXYZabcdefghijklmnopqrstuvwxyz0123456789+/';
-  const length = (text.length / 4) * 3 - (text.endsWith('==') ? 2 : text.endsWith('=') ? 1 : 0);
-  const bytes = new Uint8Array(length);
-  let at = 0;
-  for (let i = 0; i < text.length; i += 4) {
-    let word = 0;
-    for (let j = 0; j < 4; j++) word = (word << 6) | Math.max(alphabet.indexOf(text[i + j]), 0);
-    for (let shift = 16; shift >= 0 && at < length; shift -= 8) bytes[at++] = (word >> shift) & 255;
-  }
-  return bytes;
 }

@@ -6,6 +6,7 @@
 
 import { exp, log } from '../../network/elementary.js';
 import type { Ties } from '../../network/graph.js';
+import { rowKernel } from '../kernel/rows.js';
 import { quantileOfSorted } from './set-statistic.js';
 import type { Part } from './types.js';
 
@@ -37,37 +38,13 @@ export function rowStatistics(
 ): void {
   const n = wealth.length;
   const { start, target, weight } = rows;
-  if (part.statistic === 'mean' && weight === null) {
-    for (let i = 0; i < n; i++) {
-      const from = start[i];
-      const to = start[i + 1];
-      let sum = 0;
-      for (let e = from; e < to; e++) sum += wealth[target[e]];
-      if (to > from) out[i] = sum / (to - from);
-      else {
-        out[i] = wealth[i];
-        isolated[i] = 1;
-      }
-    }
-    return;
-  }
-  if (part.statistic === 'upward_mean') {
-    for (let i = 0; i < n; i++) {
-      const own = wealth[i];
-      const from = start[i];
-      const to = start[i + 1];
-      let sum = 0;
-      let count = 0;
-      for (let e = from; e < to; e++) {
-        const other = wealth[target[e]];
-        // without a branch: which neighbours are richer cannot be predicted
-        const richer = other > own ? 1 : 0;
-        sum += richer * other;
-        count += richer;
-      }
-      out[i] = count > 0 ? sum / count : own;
-      if (from === to) isolated[i] = 1;
-    }
+  const plainMean = part.statistic === 'mean' && weight === null;
+  if (plainMean || part.statistic === 'upward_mean') {
+    const upward = part.statistic === 'upward_mean';
+    // second circles would push the ties out of the kernel's memory every generation
+    const compiled = part.from === 'neighbours' ? rowKernel() : null;
+    if (compiled?.means(upward, start, target, wealth, out) !== true) plainMeans(upward, rows, wealth, out);
+    for (let i = 0; i < n; i++) if (start[i] === start[i + 1]) isolated[i] = 1;
     return;
   }
   for (let i = 0; i < n; i++) {
@@ -76,6 +53,32 @@ export function rowStatistics(
       out[i] = wealth[i];
       isolated[i] = 1;
     } else out[i] = value;
+  }
+}
+
+/** Mean (or mean of the richer) of every row without the kernel; own wealth where there are none. */
+export function plainMeans(upward: boolean, rows: Rows, wealth: Float64Array, out: Float64Array): void {
+  const { start, target } = rows;
+  const n = wealth.length;
+  for (let i = 0; i < n; i++) {
+    const own = wealth[i];
+    const from = start[i];
+    const to = start[i + 1];
+    let sum = 0;
+    let count = 0;
+    if (upward) {
+      for (let e = from; e < to; e++) {
+        const other = wealth[target[e]];
+        // without a branch: which neighbours are richer cannot be predicted
+        const richer = other > own ? 1 : 0;
+        sum += richer * other;
+        count += richer;
+      }
+    } else {
+      for (let e = from; e < to; e++) sum += wealth[target[e]];
+      count = to - from;
+    }
+    out[i] = count > 0 ? sum / count : own;
   }
 }
 

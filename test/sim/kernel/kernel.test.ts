@@ -1,17 +1,20 @@
 import fc from 'fast-check';
 import { describe, expect, test } from 'vitest';
 import { exp, log } from '../../../network/elementary.js';
-import { KERNEL_BYTES } from '../../../sim/kernel/bytes.js';
+import { KERNEL_BYTES, ROWS_BYTES } from '../../../sim/kernel/bytes.js';
 import { compile } from '../../../sim/kernel/compile.mjs';
 import { CHUNK, type Kernel, kernel } from '../../../sim/kernel/kernel.js';
+import { rowKernel } from '../../../sim/kernel/rows.js';
 import { PlannedChoice } from '../../../sim/model/planned.js';
+import { plainMeans } from '../../../sim/model/row-statistic.js';
 import type { Technology } from '../../../sim/model/types.js';
 import { Draws } from '../../../sim/random/draws.js';
 
 const compiled = kernel() as Kernel;
 
-test('the bytes are those of the source', async () => {
-  expect(Buffer.from(await compile()).toString('base64')).toBe(KERNEL_BYTES);
+test('the bytes are those of the sources', async () => {
+  expect(Buffer.from(await compile('kernel')).toString('base64')).toBe(KERNEL_BYTES);
+  expect(Buffer.from(await compile('rows')).toString('base64')).toBe(ROWS_BYTES);
 });
 
 describe('gives the same bits as the TypeScript', () => {
@@ -40,6 +43,40 @@ describe('gives the same bits as the TypeScript', () => {
     draws.uniforms('resample', 3, fast);
     draws.fillPlainly(false, 'resample', 3, plain);
     expect(fast).toEqual(plain);
+  });
+
+  test('means and upward means, for rows of any length and graphs in turn', () => {
+    const graph = fc.integer({ min: 1, max: 40 }).chain((n) =>
+      fc.record({
+        rows: fc.array(fc.array(fc.nat(n - 1), { maxLength: 12 }), { minLength: n, maxLength: n }),
+        wealth: fc.array(fc.oneof(fc.constantFrom(0, 1, 2), fc.double({ min: 0, max: 1e6, noNaN: true })), {
+          minLength: n,
+          maxLength: n,
+        }),
+      }),
+    );
+    fc.assert(
+      fc.property(fc.array(graph, { minLength: 1, maxLength: 3 }), (graphs) => {
+        const cases = graphs.map(({ rows, wealth }) => {
+          const start = new Uint32Array(rows.length + 1);
+          rows.forEach((row, i) => {
+            start[i + 1] = start[i] + row.length;
+          });
+          return { start, target: Uint32Array.from(rows.flat()), weight: null, wealth: Float64Array.from(wealth) };
+        });
+        // twice over, so that each takes the memory from the others
+        for (const c of [...cases, ...cases]) {
+          for (const upward of [false, true]) {
+            const fast = new Float64Array(c.wealth.length);
+            const plain = new Float64Array(c.wealth.length);
+            expect(rowKernel()?.means(upward, c.start, c.target, c.wealth, fast)).toBe(true);
+            plainMeans(upward, c, c.wealth, plain);
+            expect(fast).toEqual(plain);
+          }
+        }
+      }),
+      { numRuns: 300, seed: 3, endOnFailure: true },
+    );
   });
 
   test('plans, for every technology and shape', () => {
