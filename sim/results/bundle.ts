@@ -9,6 +9,7 @@ import type { Facts } from './facts.js';
 import type { Row } from './field.js';
 import { completeManifest, type ManifestEnd, type ManifestHead, manifestText, partialManifest } from './manifest.js';
 import { Results, type Source } from './read.js';
+import { sha256 } from './sha256.js';
 import { type MemoryStore, writeAll } from './store.js';
 import { type Format, type TableName, tableNamed, tablesOf } from './tables.js';
 
@@ -58,12 +59,6 @@ export async function bundle(
   const manifest = completeManifest(partialManifest(head), options.end, files);
   writeAll(store, 'manifest.json', manifestText(manifest));
   return store.files;
-}
-
-/** SHA-256, hexadecimal, by Web Cryptography (Node and secure pages alike). */
-async function sha256(bytes: Uint8Array<ArrayBuffer>): Promise<string> {
-  const digest = new Uint8Array(await crypto.subtle.digest('SHA-256', bytes));
-  return Array.from(digest, (byte) => byte.toString(16).padStart(2, '0')).join('');
 }
 
 /** Files in memory as a source for reading. */

@@ -10,6 +10,7 @@ import { bundle } from '../../sim/results/bundle.js';
 import { finishTables } from '../../sim/results/finish.js';
 import { reportHtml } from '../../sim/results/report/report.js';
 import { canonicalText, factsOf, householdsOf, runReplicate } from '../../sim/results/run-replicate.js';
+import { sha256 } from '../../sim/results/sha256.js';
 import { memoryStore, writeAll } from '../../sim/results/store.js';
 import { loadInputs } from '../../sim/study/inputs.js';
 import { parseStudy, studyText } from '../../sim/study/parse.js';
@@ -129,7 +130,7 @@ async function assembleParts(whole: Prepared, parts: Files, replicates: number, 
     head: {
       version: VERSION,
       study: study.study,
-      studyHash: await hashed(canonicalText(whole)),
+      studyHash: await sha256(new TextEncoder().encode(canonicalText(whole))),
       seed: study.seed,
       arms: study.arms.map((arm) => arm.name),
       replicates,
@@ -159,9 +160,4 @@ async function assembleParts(whole: Prepared, parts: Files, replicates: number, 
 
 function buffersOf(files: Files): ArrayBuffer[] {
   return [...new Set([...files.values()].map((bytes) => bytes.buffer))];
-}
-
-async function hashed(text: string): Promise<string> {
-  const digest = new Uint8Array(await crypto.subtle.digest('SHA-256', new TextEncoder().encode(text)));
-  return Array.from(digest, (byte) => byte.toString(16).padStart(2, '0')).join('');
 }

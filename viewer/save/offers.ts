@@ -82,6 +82,15 @@ export function dataOffers(source: Source): DataOffer[] {
       },
     },
     {
+      name: 'Report (HTML)',
+      says: 'the answer with figures and the model, to read, print or send',
+      doing: 'Saving the report …',
+      make: async () => {
+        if (!(await source.files()).includes('report.html')) throw new Error('These results hold no report.');
+        return { name: `${stem}-report.html`, content: await source.file('report.html') };
+      },
+    },
+    {
       name: 'Study (YAML)',
       says: 'every setting written out: running it again gives the same bytes',
       doing: 'Saving the study …',
