@@ -52,7 +52,11 @@ async function start(): Promise<void> {
     return;
   }
   wait('Opening …');
-  const { results, study } = await opened();
+  const found = await opened();
+  // a results folder beside a static build is named in the address: ?results=my-study
+  const named = asked.get('results');
+  const results = found.results ?? (named === null ? undefined : named.replace(/\/?$/, '/'));
+  const { study } = found;
   if (results !== undefined) {
     const source = await openFolder(httpFiles(results), 'folder');
     const report = (await source.files()).includes('report.html') ? `${results}report.html` : null;

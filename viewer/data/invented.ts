@@ -63,6 +63,8 @@ export function invented(n: number, degree = 8, generations = 8): Source {
   const cast: Cast = {
     n,
     id: Uint32Array.from({ length: n }, (_, i) => i),
+    names: null,
+    placeNames: null,
     place,
     places,
     group,
@@ -153,7 +155,6 @@ export function invented(n: number, degree = 8, generations = 8): Source {
     every: 1,
     households: n,
     groupNames: ['lowland', 'upland'],
-    placeNames: null,
     yaml: 'study: Invented villages\n',
   };
   const indicators = (): Table => {

@@ -28,7 +28,10 @@ import {
 /** Bytes of panel row groups kept. */
 const KEEP_BYTES = 200e6;
 
-const TEXTS = new Set(['pocket_role', 'cause', 'group', 'place_name', 'arm']);
+const TEXTS = new Set(['pocket_role', 'cause', 'group', 'place_name', 'household_id', 'arm']);
+
+/** A column of text as read. */
+type Coded = Exclude<Values, Float64Array>;
 
 /** One row group of the panel, read. */
 interface ReadGroup {
@@ -104,7 +107,6 @@ export async function openFolder(files: Files, kind: 'folder' | 'page'): Promise
     every,
     households: manifest.households,
     groupNames: told.groupNames,
-    placeNames: null,
     yaml,
   };
   return new FolderSource(
@@ -191,9 +193,18 @@ class FolderSource implements Source {
       treated[k] = (columns.treated as Float64Array)[i] === 1 ? 1 : 0;
       any ||= treated[k] === 1;
     });
+    const named = columns.household_id as Coded | undefined;
+    const placed = columns.place_name as Coded | undefined;
+    const placeNames = placed === undefined ? null : Array.from({ length: places }, (_, p) => String(p));
+    if (placed !== undefined && placeNames !== null)
+      pick.forEach((i, k) => {
+        placeNames[place[k]] = placed.names[placed.codes[i]] ?? placeNames[place[k]];
+      });
     return {
       n,
       id: Uint32Array.from(pick, (i) => id[i]),
+      names: named === undefined ? null : Array.from(pick, (i) => named.names[named.codes[i]] ?? String(id[i])),
+      placeNames,
       place,
       places,
       group,
@@ -520,7 +531,8 @@ async function householdRows(
   arm: string,
   replicate: number,
 ): Promise<Record<string, Values>> {
-  const names = ['household', 'place', 'group', 'child_weight', 'treated'];
+  const all = ['household', 'place', 'group', 'child_weight', 'treated', 'household_id', 'place_name'];
+  const names = table === null ? all : all.filter((name) => table.names.has(name));
   if (table !== null) return (await readRows(table, arm, replicate, names, TEXTS)).columns;
   return pickRows(await results.table('households'), arm, replicate, names);
 }

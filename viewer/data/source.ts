@@ -34,7 +34,6 @@ export interface StudyInfo {
   readonly every: number;
   readonly households: number;
   readonly groupNames: readonly string[];
-  readonly placeNames: readonly string[] | null;
   /** The study as YAML, every default written out. */
   readonly yaml: string;
 }
@@ -44,6 +43,10 @@ export interface Cast {
   readonly n: number;
   /** Household numbers as the files have them. */
   readonly id: Uint32Array;
+  /** Ids of a household file, by household; null when households are drawn and have numbers only. */
+  readonly names: readonly string[] | null;
+  /** Names of places as in a household file, by place; null when places are numbers. */
+  readonly placeNames: readonly string[] | null;
   readonly place: Uint32Array;
   readonly places: number;
   readonly group: Uint32Array;

@@ -64,7 +64,7 @@ export function householdPanel(app: App): TemplateResult {
       : shown(
           app,
           `household-${view.household}-descent`,
-          `Line of descent in ${name}`,
+          `Line of descent in ${name}${whereabouts(app, i)}`,
           descentFigure({ width: first.width, height }, { ...line, now: view.generation }),
         );
   if (!arm.now.decided) {
@@ -159,6 +159,17 @@ function whatIf(app: App, problem: Problem, society: number): TemplateResult {
       }
     </ul>
   </div>`;
+}
+
+/** Group and place of a household, as far as there are several. */
+function whereabouts(app: App, i: number): string {
+  const cast = app.scene?.arms[0].cast;
+  if (cast === undefined) return '';
+  const said: string[] = [];
+  if (cast.names !== null) said.push(cast.names[i]);
+  if (cast.groups > 1) said.push(app.source.info.groupNames[cast.group[i]]);
+  if (cast.places > 1) said.push(cast.placeNames?.[cast.place[i]] ?? `place ${cast.place[i]}`);
+  return said.length > 0 ? ` (${said.join(', ')})` : '';
 }
 
 function mean(values: Float64Array): number {

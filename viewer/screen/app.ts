@@ -363,6 +363,7 @@ export class App {
 
   render(): void {
     const { info } = this.source;
+    document.title = `${info.title} · Rungsight`;
     const { view, scene } = this;
     const none = new Float64Array(info.generations + 1).fill(NaN);
     const names: [string, string] = [info.arms[view.left].name, info.arms[view.right].name];
@@ -448,10 +449,13 @@ export class App {
       this.select(-1);
       return;
     }
-    const index = /^\d+$/.test(said.trim()) ? cast.id.indexOf(Number(said)) : -1;
+    const named = cast.names?.indexOf(said.trim()) ?? -1;
+    const index = named >= 0 ? named : /^\d+$/.test(said.trim()) ? cast.id.indexOf(Number(said)) : -1;
     if (index < 0) {
       this.#message = {
-        says: `There is no household ${said.trim()}: numbers run from ${cast.id[0]} to ${cast.id[cast.n - 1]}.`,
+        says: `There is no household ${said.trim()}: numbers run from ${cast.id[0]} to ${cast.id[cast.n - 1]}${
+          cast.names === null ? '' : ', and ids are those of the household file'
+        }.`,
         wrong: false,
       };
       this.render();
