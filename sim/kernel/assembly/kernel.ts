@@ -29,6 +29,7 @@ const CHILD_WEALTH: usize = COLUMNS + 11 * COLUMN;
 const MET: usize = COLUMNS + 12 * COLUMN;
 const REACHED: usize = MET + CHUNK;
 const GROWTH: usize = 131072;
+const TAIL_INDEX: usize = COMMON;
 
 const ROUND: f64 = 6755399441055744.0;
 let LN2_HIGH: f64 = 0;
@@ -233,12 +234,7 @@ export function draw(
     v128.store(at, v128.shuffle<i64>(even, odd, 0, 2), 32);
     v128.store(at, v128.shuffle<i64>(even, odd, 1, 3), 48);
   }
-  if (normals) {
-    for (let i = 0; i < count; i += 2) {
-      const at = DRAW + (<usize>i << 3);
-      v128.store(at, quantiles(v128.load(at)));
-    }
-  }
+  if (normals) quantiles(count);
 }
 
 @inline
@@ -246,36 +242,44 @@ function horner(p: v128, r: v128, c: f64): v128 {
   return f64x2.add(f64x2.mul(p, r), two(c));
 }
 
-/** normalQuantile of two lanes: the middle together, the tails one by one. */
-function quantiles(u: v128): v128 {
-  const q = f64x2.sub(u, two(0.5));
-  const middle = f64x2.le(f64x2.abs(q), two(0.425));
-  const r = f64x2.sub(two(0.180625), f64x2.mul(q, q));
-  let p = horner(two(2509.0809287301226727), r, 33430.575583588128105);
-  p = horner(p, r, 67265.770927008700853);
-  p = horner(p, r, 45921.953931549871457);
-  p = horner(p, r, 13731.693765509461125);
-  p = horner(p, r, 1971.5909503065514427);
-  p = horner(p, r, 133.14166789178437745);
-  p = horner(p, r, 3.387132872796366608);
-  let d = horner(two(5226.495278852545925), r, 28729.085735721942674);
-  d = horner(d, r, 39307.89580009271061);
-  d = horner(d, r, 21213.794301586595867);
-  d = horner(d, r, 5394.1960214247511077);
-  d = horner(d, r, 687.1870074920579083);
-  d = horner(d, r, 42.313330701600911252);
-  d = horner(d, r, 1);
-  let x = f64x2.div(f64x2.mul(q, p), d);
-  const inside = i64x2.bitmask(middle);
-  if (inside != 3) {
-    if ((inside & 1) == 0) {
-      x = f64x2.replace_lane(x, 0, tailQuantile(f64x2.extract_lane(q, 0), f64x2.extract_lane(u, 0)));
-    }
-    if ((inside & 2) == 0) {
-      x = f64x2.replace_lane(x, 1, tailQuantile(f64x2.extract_lane(q, 1), f64x2.extract_lane(u, 1)));
-    }
+/**
+ * DRAW[i] = normalQuantile(DRAW[i]): the formula of the middle for everyone, then the tails again with theirs. The tails
+ * are listed first (in the space of CONSUMPTION and COMMON), without a branch that cannot be predicted.
+ */
+function quantiles(count: i32): void {
+  let tails: usize = 0;
+  for (let i = 0; i < count; i += 2) {
+    const at = DRAW + (<usize>i << 3);
+    const u = v128.load(at);
+    const q = f64x2.sub(u, two(0.5));
+    const outside = i64x2.bitmask(f64x2.gt(f64x2.abs(q), two(0.425)));
+    const r = f64x2.sub(two(0.180625), f64x2.mul(q, q));
+    let p = horner(two(2509.0809287301226727), r, 33430.575583588128105);
+    p = horner(p, r, 67265.770927008700853);
+    p = horner(p, r, 45921.953931549871457);
+    p = horner(p, r, 13731.693765509461125);
+    p = horner(p, r, 1971.5909503065514427);
+    p = horner(p, r, 133.14166789178437745);
+    p = horner(p, r, 3.387132872796366608);
+    let d = horner(two(5226.495278852545925), r, 28729.085735721942674);
+    d = horner(d, r, 39307.89580009271061);
+    d = horner(d, r, 21213.794301586595867);
+    d = horner(d, r, 5394.1960214247511077);
+    d = horner(d, r, 687.1870074920579083);
+    d = horner(d, r, 42.313330701600911252);
+    d = horner(d, r, 1);
+    v128.store(at, f64x2.div(f64x2.mul(q, p), d));
+    store<f64>(CONSUMPTION + (tails << 3), f64x2.extract_lane(u, 0));
+    store<u16>(TAIL_INDEX + (tails << 1), <u16>i);
+    tails += <usize>(outside & 1);
+    store<f64>(CONSUMPTION + (tails << 3), f64x2.extract_lane(u, 1));
+    store<u16>(TAIL_INDEX + (tails << 1), <u16>(i + 1));
+    tails += <usize>(outside >>> 1);
   }
-  return x;
+  for (let t: usize = 0; t < tails; t++) {
+    const u = load<f64>(CONSUMPTION + (t << 3));
+    store<f64>(DRAW + (<usize>load<u16>(TAIL_INDEX + (t << 1)) << 3), tailQuantile(u - 0.5, u));
+  }
 }
 
 /** exp of two lanes. */
@@ -321,37 +325,32 @@ export function sharedShocks(count: i32, own: f64, shared: f64, shift: f64): voi
   }
 }
 
-/** Choices by the growth table in GROWTH: growth-table.ts. */
+/** Choices by the growth table in GROWTH, two at a time and both branches for each: growth-table.ts. */
 export function chooseByTable(count: i32, cells: i32, threshold_: f64, low: f64, grossReturn: f64): void {
-  const last = cells - 1;
-  for (let i = 0; i < count; i++) {
+  const last = i32x4.splat(cells - 1);
+  for (let i = 0; i < count; i += 2) {
     const at = <usize>i << 3;
-    const y = load<f64>(WEALTH + at);
-    const aim = load<f64>(ASPIRATION + at);
-    const q = aim / y;
-    let z: f64;
-    if (q > threshold_) {
-      z = low * y;
-      store<u8>(MET + <usize>i, 0);
-    } else {
-      const position = ((q > 0 ? q : 0) / threshold_) * <f64>cells;
-      let cell = <i32>position;
-      if (cell > last) cell = last;
-      const x = position - <f64>cell;
-      const from = GROWTH + <usize>cell * 48;
-      z =
-        (load<f64>(from) +
-          x *
-            (load<f64>(from, 8) +
-              x *
-                (load<f64>(from, 16) +
-                  x * (load<f64>(from, 24) + x * (load<f64>(from, 32) + x * load<f64>(from, 40)))))) *
-        y;
-      if (z < aim) z = aim;
-      store<u8>(MET + <usize>i, 1);
-    }
-    store<f64>(PLANNED + at, z);
-    store<f64>(INVESTMENT + at, z / grossReturn);
+    const y = v128.load(WEALTH + at);
+    const aim = v128.load(ASPIRATION + at);
+    const q = f64x2.div(aim, y);
+    const strives = f64x2.le(q, two(threshold_));
+    const position = f64x2.mul(f64x2.div(f64x2.pmax(q, two(0)), two(threshold_)), two(<f64>cells));
+    const cell = i32x4.min_s(i32x4.trunc_sat_f64x2_s_zero(position), last);
+    const x = f64x2.sub(position, f64x2.convert_low_i32x4_s(cell));
+    const one = GROWTH + <usize>i32x4.extract_lane(cell, 0) * 48;
+    const other = GROWTH + <usize>i32x4.extract_lane(cell, 1) * 48;
+    let g = v128.shuffle<i64>(v128.load(one, 32), v128.load(other, 32), 1, 3);
+    g = f64x2.add(v128.shuffle<i64>(v128.load(one, 32), v128.load(other, 32), 0, 2), f64x2.mul(x, g));
+    g = f64x2.add(v128.shuffle<i64>(v128.load(one, 16), v128.load(other, 16), 1, 3), f64x2.mul(x, g));
+    g = f64x2.add(v128.shuffle<i64>(v128.load(one, 16), v128.load(other, 16), 0, 2), f64x2.mul(x, g));
+    g = f64x2.add(v128.shuffle<i64>(v128.load(one), v128.load(other), 1, 3), f64x2.mul(x, g));
+    g = f64x2.add(v128.shuffle<i64>(v128.load(one), v128.load(other), 0, 2), f64x2.mul(x, g));
+    const striving = f64x2.pmax(f64x2.mul(g, y), aim);
+    const z = v128.bitselect(striving, f64x2.mul(two(low), y), strives);
+    const met = i64x2.bitmask(strives);
+    store<u16>(MET + <usize>i, <u16>((met & 1) | ((met & 2) << 7)));
+    v128.store(PLANNED + at, z);
+    v128.store(INVESTMENT + at, f64x2.div(z, two(grossReturn)));
   }
 }
 

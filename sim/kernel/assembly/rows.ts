@@ -14,14 +14,15 @@ export function means(upward: bool, count: i32, start: usize, target: usize, wea
     let sum: f64 = 0;
     let mean = mine;
     if (upward) {
-      let richer: f64 = 0;
+      let richer: i32 = 0;
       for (; e < end; e += 4) {
         const other = load<f64>(wealth + (<usize>load<u32>(e) << 3));
         const above = other > mine;
-        sum += select<f64>(other, 0, above);
-        richer += select<f64>(1, 0, above);
+        // a mask, not a branch: which neighbours are richer cannot be predicted
+        sum += reinterpret<f64>(reinterpret<i64>(other) & -(<i64>above));
+        richer += <i32>above;
       }
-      if (richer > 0) mean = sum / richer;
+      if (richer > 0) mean = sum / <f64>richer;
     } else {
       for (; e < end; e += 4) sum += load<f64>(wealth + (<usize>load<u32>(e) << 3));
       if (end > from) mean = sum / <f64>((end - from) >> 2);
