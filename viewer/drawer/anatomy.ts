@@ -134,7 +134,7 @@ export function mixInWords(model: Model, milestone: number): string {
                 : part.statistic === 'similarity_mean'
                   ? `${who} like it`
                   : `${part.statistic} of ${who}`;
-      return `${Number(part.weight.toFixed(2))} ${part.from === 'neighbours' && part.statistic === 'upward_mean' ? 'richer neighbours' : said}`;
+      return `${part.weight === 1 ? '' : `${Number(part.weight.toFixed(2))} `}${part.from === 'neighbours' && part.statistic === 'upward_mean' ? 'richer neighbours' : said}`;
     });
   return `${scale === 1 ? '' : `${Number(scale.toFixed(2))} × (`}${parts.join(' + ')}${scale === 1 ? '' : ')'}`;
 }

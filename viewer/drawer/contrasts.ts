@@ -160,11 +160,17 @@ export function contrastsPanel(app: App): TemplateResult {
   if (got === undefined) return html`<p class="note">${data.failed ?? 'Reading the contrasts …'}</p>`;
   const [a, b] = [info.arms[view.left].name, info.arms[view.right].name];
   const size = units(app, 0.4, 20);
-  const series = got.paths.get(chosen) ?? got.paths.values().next().value;
+  const alone = view.left === view.right;
+  const path = got.paths.get(chosen) ?? got.paths.values().next().value;
+  const series = alone ? path?.slice(0, 1) : path;
   return html`<div class="contrasts">
     <div class="scrolls" tabindex="0" role="group" aria-label="Indicators">
       <table class="list">
-        <thead><tr><th scope="col">generation ${view.generation}, ${got.replicates === 1 ? 'one replicate' : `${got.replicates} replicates`}</th><th scope="col" class="right">${a}</th><th scope="col" class="right">${b}</th><th scope="col" class="right">${b} − ${a}</th><th scope="col" class="right">95 % interval</th><th scope="col"><span class="hidden-text">interval drawn</span></th></tr></thead>
+        <thead><tr><th scope="col">generation ${view.generation}, ${got.replicates === 1 ? 'one replicate' : `${got.replicates} replicates`}</th><th scope="col" class="right">${a}</th>${
+          alone
+            ? nothing
+            : html`<th scope="col" class="right">${b}</th><th scope="col" class="right">${b} − ${a}</th><th scope="col" class="right">95 % interval</th><th scope="col"><span class="hidden-text">interval drawn</span></th>`
+        }</tr></thead>
         <tbody>
           ${got.rows.map(
             (r) => html`<tr class=${r.indicator === chosen ? 'chosen' : ''}>
@@ -172,10 +178,14 @@ export function contrastsPanel(app: App): TemplateResult {
                 chosen = r.indicator;
                 app.render();
               }}>${inWords(r.indicator)}</button></td>
-              <td class="right">${short(r.left)}</td><td class="right">${short(r.right)}</td>
-              <td class="right">${signed(r.difference)}</td>
-              <td class="right">${Number.isFinite(r.low) ? `${signed(r.low)} to ${signed(r.high)}` : '–'}</td>
-              <td>${interval(r)}</td>
+              <td class="right">${short(r.left)}</td>
+              ${
+                alone
+                  ? nothing
+                  : html`<td class="right">${short(r.right)}</td><td class="right">${signed(r.difference)}</td>
+                      <td class="right">${Number.isFinite(r.low) ? `${signed(r.low)} to ${signed(r.high)}` : '–'}</td>
+                      <td>${interval(r)}</td>`
+              }
             </tr>`,
           )}
         </tbody>

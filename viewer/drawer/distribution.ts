@@ -22,7 +22,7 @@ interface Curves {
 }
 
 interface Data {
-  readonly names: readonly [string, string];
+  readonly names: readonly string[];
   readonly generation: number;
   readonly curves: readonly Curves[];
   readonly incidence: readonly Series[];
@@ -61,7 +61,7 @@ async function load(app: App): Promise<Data> {
   const { view, source } = app;
   const { info } = source;
   const t = Math.min(view.generation, info.generations - 1);
-  const arms = [view.left, view.right];
+  const arms = view.left === view.right ? [view.left] : [view.left, view.right];
   const many = Math.max(1, Math.min(BAND, info.shown.length, Math.floor(BAND_ROWS / info.households)));
   const replicates = [view.replicate, ...info.shown.filter((r) => r !== view.replicate)].slice(0, many);
   const curves: Curves[] = [];
@@ -78,7 +78,7 @@ async function load(app: App): Promise<Data> {
     };
     curves.push({ rank: band((c) => c.rank), lorenz: band((c) => c.lorenz), replicates: all.length });
   }
-  const names: [string, string] = [info.arms[view.left].name, info.arms[view.right].name];
+  const names = arms.map((arm) => info.arms[arm].name);
   const [incidence, transitions] = await Promise.all([source.table('incidence'), source.table('transitions')]);
   return {
     names,

@@ -50,7 +50,7 @@ export function drawer(app: App): TemplateResult {
         )}
       </div>
       ${
-        view.tab === 'household' && scene !== null && scene.selected >= 0
+        view.tab === 'household' && scene !== null && scene.selected >= 0 && app.source.info.arms.length > 1
           ? html`<span class="choice" role="radiogroup" aria-label="Arm of the household shown"><span class="says">in</span>${scene.arms.map(
               (arm, k) =>
                 html`<button class="plain" role="radio" aria-checked=${app.side === k} @click=${() => app.lookAt(k === 0 ? 0 : 1)}>${arm.name}</button>`,

@@ -44,7 +44,7 @@ export function householdPanel(app: App): TemplateResult {
     </div>`;
   }
   const i = scene.selected;
-  const side = app.side;
+  const side = app.source.info.arms.length > 1 ? app.side : 0;
   const arm = scene.arms[side];
   const armIndex = side === 0 ? view.left : view.right;
   const model = app.source.info.arms[armIndex].model;
@@ -64,7 +64,7 @@ export function householdPanel(app: App): TemplateResult {
       : shown(
           app,
           `household-${view.household}-descent`,
-          `Line of descent in ${name}${whereabouts(app, i)}`,
+          descentHeading(app, i, name, first.width),
           descentFigure({ width: first.width, height }, { ...line, now: view.generation }),
         );
   if (!arm.now.decided) {
@@ -115,8 +115,9 @@ function whatIf(app: App, problem: Problem, society: number): TemplateResult {
   const { scene } = app;
   if (scene === null) return html``;
   const i = scene.selected;
-  const arm = scene.arms[app.side];
-  const other = scene.arms[app.side === 0 ? 1 : 0];
+  const side = app.source.info.arms.length > 1 ? app.side : 0;
+  const arm = scene.arms[side];
+  const other = scene.arms[side === 0 ? 1 : 0];
   const { model } = problem;
   const phi = arm.earlier === null ? 0 : model.persistence;
   const wide = model.milestones.map(
@@ -134,8 +135,9 @@ function whatIf(app: App, problem: Problem, society: number): TemplateResult {
           ? 'it is sheltered'
           : asAll.planned > now.planned
             ? 'it would plan more'
-            : 'no more ambitious';
-  const elsewhere = other.now.decided ? other.now.aspirations.map((a) => a[i]) : null;
+            : 'it would plan no more';
+  const elsewhere =
+    app.source.info.arms.length > 1 && other.now.decided ? other.now.aspirations.map((a) => a[i]) : null;
   const fits = elsewhere !== null && elsewhere.length === problem.aspirations.length;
   const asThere = fits ? decide({ ...problem, aspirations: elsewhere }) : null;
   const enough = wealthThatWouldDo(problem);
@@ -161,15 +163,20 @@ function whatIf(app: App, problem: Problem, society: number): TemplateResult {
   </div>`;
 }
 
-/** Group and place of a household, as far as there are several. */
-function whereabouts(app: App, i: number): string {
+/** Heading with the household's id, group and place, as many of them as fit. */
+function descentHeading(app: App, i: number, arm: string, width: number): string {
   const cast = app.scene?.arms[0].cast;
-  if (cast === undefined) return '';
   const said: string[] = [];
-  if (cast.names !== null) said.push(cast.names[i]);
-  if (cast.groups > 1) said.push(app.source.info.groupNames[cast.group[i]]);
-  if (cast.places > 1) said.push(cast.placeNames?.[cast.place[i]] ?? `place ${cast.place[i]}`);
-  return said.length > 0 ? ` (${said.join(', ')})` : '';
+  if (cast !== undefined) {
+    if (cast.names !== null) said.push(cast.names[i]);
+    if (cast.groups > 1) said.push(app.source.info.groupNames[cast.group[i]]);
+    if (cast.places > 1) said.push(cast.placeNames?.[cast.place[i]] ?? `place ${cast.place[i]}`);
+  }
+  for (let k = said.length; k > 0; k--) {
+    const heading = `Line of descent in ${arm} (${said.slice(0, k).join(', ')})`;
+    if (heading.length * 6.6 < width - 40) return heading;
+  }
+  return `Line of descent in ${arm}`;
 }
 
 function mean(values: Float64Array): number {

@@ -88,7 +88,8 @@ export function pocketsPanel(app: App): TemplateResult {
   );
   if (scene === null || rows === undefined)
     return html`<p class="note">${rowsOf.failed ?? 'Reading the pockets …'}</p>`;
-  const names = [scene.arms[0].name, scene.arms[1].name];
+  const all = app.source.info.arms;
+  const names = all.length === 1 ? [all[0].name] : [scene.arms[0].name, scene.arms[1].name];
   const here = rows
     .filter((r) => r.generation === view.generation && names.includes(r.arm))
     .sort((a, b) => {

@@ -124,7 +124,10 @@ export class App {
   async #whereArmsPart(): Promise<void> {
     const { info } = this.source;
     const [left, right] = [this.view.left, this.view.right];
-    if (left === right) return;
+    if (left === right) {
+      this.view = this.#allowed({ ...this.view, generation: info.generations - 1 });
+      return;
+    }
     const shares = sharesOf(
       await this.source.table('indicators'),
       info.arms.map((a) => a.name),
@@ -207,12 +210,14 @@ export class App {
     const { info } = this.source;
     const { replicate, generation } = view;
     const arms = [view.left, view.right];
+    // one arm has nothing beside it but its own start
+    const alone = info.arms.length === 1;
     const before = generation - info.every;
     const tieTime = Math.min(generation, info.generations - 1);
     const [casts, ties, now, earlier, extents, indicators, pockets] = await Promise.all([
       Promise.all(arms.map((a) => loader.cast(a, replicate))),
       Promise.all(arms.map((a) => loader.ties(a, replicate, tieTime))),
-      Promise.all(arms.map((a) => loader.snapshot(a, replicate, generation))),
+      Promise.all(arms.map((a, k) => loader.snapshot(a, replicate, alone && k === 1 ? 0 : generation))),
       Promise.all(
         arms.map((a) =>
           generation > 0
@@ -240,11 +245,11 @@ export class App {
         const key = `${this.sourceCount}/${arms[k]}/${replicate}`;
         const map = view.arrangement === 'map' ? this.#layouts.map(key, ties[k], casts[k]) : null;
         return {
-          name: info.arms[arms[k]].name,
+          name: alone && k === 1 ? `${info.arms[0].name}, at the start` : info.arms[arms[k]].name,
           note: noteOf(info.arms[arms[k]].reached, casts[k], ties[k]),
           cast: casts[k],
           now: now[k],
-          earlier: earlier[k],
+          earlier: alone && k === 1 ? null : earlier[k],
           ties: ties[k],
           sideways: this.#layouts.sideways(key, ties[k], casts[k], first[k].wealth),
           map: map?.positions ?? null,
@@ -376,6 +381,7 @@ export class App {
           replicateCount: info.replicates,
           report: this.origin.report ?? null,
           armNames: info.arms.map((a) => a.name),
+          heads: [scene?.arms[0].name ?? names[0], scene?.arms[1].name ?? names[1]],
           notes: [scene?.arms[0].note ?? '', scene?.arms[1].note ?? ''],
           feet: this.#feet(),
           summary: this.#summary(),
@@ -385,7 +391,10 @@ export class App {
           message: this.#message,
           strip: strip(
             {
-              shares: [this.#frustrated[view.left] ?? none, this.#frustrated[view.right] ?? none],
+              shares: [
+                this.#frustrated[view.left] ?? none,
+                info.arms.length === 1 ? null : (this.#frustrated[view.right] ?? none),
+              ],
               names,
               generation: view.generation,
               reached: this.reached,
@@ -693,7 +702,7 @@ export class App {
     const [a, b] = scene.arms;
     if (!a.now.decided) return `Generation ${scene.generation}: the last children, before they decide.`;
     const shareA = this.#frustrated[view.left]?.[scene.generation];
-    const shareB = this.#frustrated[view.right]?.[scene.generation];
+    const shareB = this.#frustrated[view.right]?.[b.now.generation];
     const pockets = a.pockets.length + b.pockets.length;
     const where =
       this.#pockets === null
@@ -707,7 +716,8 @@ export class App {
                   ? `, ${pockets === 1 ? '' : 'all '}in ${a.name}`
                   : `, ${a.pockets.length} in ${a.name}`
             }`;
-    return `Generation ${scene.generation}: ${percent(shareA ?? NaN)} frustrated in ${a.name}, ${percent(shareB ?? NaN)} in ${b.name}${where}.`;
+    const beside = this.source.info.arms.length === 1 ? 'at the start' : `in ${b.name}`;
+    return `Generation ${scene.generation}: ${percent(shareA ?? NaN)} frustrated in ${a.name}, ${percent(shareB ?? NaN)} ${beside}${where}.`;
   }
 }
 

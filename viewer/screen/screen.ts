@@ -16,6 +16,8 @@ export interface ScreenParts {
   readonly replicateCount: number;
   readonly report: string | null;
   readonly armNames: readonly string[];
+  /** Names over the two fields. */
+  readonly heads: readonly [string, string];
   readonly notes: readonly [string, string];
   readonly feet: readonly [string, string];
   readonly summary: string;
@@ -69,7 +71,7 @@ export function legendTemplate(items: readonly LegendItem[]): TemplateResult {
 
 function armName(parts: ScreenParts, events: ScreenEvents, side: 'left' | 'right'): unknown {
   const arm = parts.view[side];
-  if (parts.armNames.length < 3) return html`<h2 class="arm-name">${parts.armNames[arm]}</h2>`;
+  if (parts.armNames.length < 3) return html`<h2 class="arm-name">${parts.heads[side === 'left' ? 0 : 1]}</h2>`;
   return html`<h2 class="arm-name"><select
     class="quiet"
     aria-label=${`Arm in the ${side} field`}

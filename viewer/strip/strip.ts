@@ -4,12 +4,12 @@
  *
  * It is one slider to a screen reader. Knows shares, not households.
  */
-import { html, svg, type TemplateResult } from 'lit-html';
+import { html, nothing, svg, type TemplateResult } from 'lit-html';
 import { percent } from '../screen/words.js';
 
 export interface StripData {
-  /** Frustrated share by generation, 0 … generations, in the left and the right field; NaN where undecided. */
-  readonly shares: readonly [Float64Array, Float64Array];
+  /** Frustrated share by generation, 0 … generations, in the left and the right field; NaN where undecided, null when one arm stands alone. */
+  readonly shares: readonly [Float64Array, Float64Array | null];
   readonly names: readonly [string, string];
   readonly generation: number;
   /** Last generation that can be shown. */
@@ -36,10 +36,11 @@ export function strip(data: StripData, events: StripEvents): TemplateResult {
     events.go(Math.max(0, Math.min(last, t)));
   };
   const says = (t: number): string => {
-    const [a, b] = [data.shares[0][t], data.shares[1][t]];
+    const a = data.shares[0][t];
+    const b = data.shares[1]?.[t];
     return Number.isNaN(a)
       ? `generation ${t}, the last children`
-      : `generation ${t}: ${percent(a)} frustrated in ${data.names[0]}, ${percent(b)} in ${data.names[1]}`;
+      : `generation ${t}: ${percent(a)} frustrated in ${data.names[0]}${b === undefined ? '' : `, ${percent(b)} in ${data.names[1]}`}`;
   };
   const key = (e: KeyboardEvent): void => {
     const to: Record<string, number> = {
@@ -96,15 +97,15 @@ export function strip(data: StripData, events: StripEvents): TemplateResult {
         ${Array.from({ length: count }, (_, t) => {
           const x = t * SLOT;
           const bar = (share: number, k: number): unknown => {
-            const wide = 29;
-            const at = x + (k === 0 ? 18.5 : 52.5);
+            const wide = data.shares[1] === null ? 44 : 29;
+            const at = x + (data.shares[1] === null ? 28 : k === 0 ? 18.5 : 52.5);
             const known = Number.isFinite(share) && t <= data.reached;
             const high = known ? share * HIGH : 0;
             return svg`<rect class=${known ? 'strip-satisfied' : 'strip-open'} x=${at} y="0" width=${wide} height=${HIGH}></rect>
               <rect class=${k === 0 ? 'strip-frustrated' : 'strip-frustrated second'} x=${at} y=${HIGH - high} width=${wide} height=${high}></rect>`;
           };
           return svg`<g class=${t === data.generation ? 'now' : ''}>
-            ${bar(data.shares[0][t], 0)}${bar(data.shares[1][t], 1)}</g>`;
+            ${bar(data.shares[0][t], 0)}${data.shares[1] === null ? nothing : bar(data.shares[1][t], 1)}</g>`;
         })}
       </svg>
     </div>

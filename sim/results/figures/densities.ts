@@ -79,5 +79,11 @@ export function roundWealths(low: number, high: number, most = 7): number[] {
       }
     if (list.length <= most) return list;
   }
-  return [];
+  // many powers of ten: every second, third …
+  const first = Math.ceil(low / Math.LN10);
+  const last = Math.floor(high / Math.LN10);
+  const step = Math.max(1, Math.ceil((last - first + 1) / Math.max(1, most)));
+  const list: number[] = [];
+  for (let p = first; p <= last; p += step) list.push(Number(`1e${p}`));
+  return list;
 }

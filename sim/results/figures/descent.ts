@@ -29,11 +29,13 @@ export function descentFigure(size: Size, d: Descent, title = 'Line of descent: 
   const x = scaleLinear().domain([0, T]).range([room.left, room.right]);
   const y = scaleLog().domain([low, high]).range([room.bottom, room.top]);
   const parts: string[] = [];
-  const ticks = roundWealths(
+  const round = roundWealths(
     Math.log(low) - 1e-9,
     Math.log(high) + 1e-9,
     Math.max(2, Math.floor((room.bottom - room.top) / 26)),
   );
+  // a narrow range may hold no round number: then its ends
+  const ticks = round.length > 1 ? round : [low, high];
   for (const t of ticks)
     parts.push(
       rule(room.left, y(t), room.right, y(t), 'f-grid'),

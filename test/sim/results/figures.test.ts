@@ -215,7 +215,8 @@ test('numbers are short and read back within a hundredth of their size', () => {
 
 test('round wealths lie between the ends', () => {
   expect(roundWealths(Math.log(8), Math.log(120))).toEqual([10, 20, 50, 100]);
-  expect(roundWealths(Math.log(8), Math.log(1e6), 5)).toEqual([10, 100, 1000, 10000, 100000]);
+  expect(roundWealths(Math.log(8), Math.log(2e5), 5)).toEqual([10, 100, 1000, 10000, 100000]);
+  expect(roundWealths(Math.log(0.002), Math.log(2000), 3)).toEqual([0.01, 1, 100]);
 });
 
 test('a caption is broken between words', () => {
