@@ -179,7 +179,7 @@ function problemsOfUnion(
   let best: Issue[] | undefined;
   let bestScore = Infinity;
   for (const option of issue.errors) {
-    let score = 0;
+    let score = meantKey(option as Issue[], value) ? -8 : 0;
     for (const inner of option) {
       const own = inner.path.length === 0;
       if (own && inner.code === 'unrecognized_keys') score += 10 * inner.keys.length;
@@ -213,6 +213,17 @@ function problemsOfUnion(
   return (best ?? []).flatMap((inner) =>
     problemsOf({ ...inner, path: [...path, ...(inner.path as Path)] } as Issue, raw, keysAt),
   );
+}
+
+/** True when a key that is not known here is close to one that this alternative misses. */
+function meantKey(option: readonly Issue[], value: unknown): boolean {
+  const unknown = option.flatMap((inner) =>
+    inner.code === 'unrecognized_keys' && inner.path.length === 0 ? inner.keys : [],
+  );
+  const missing = option
+    .filter((inner) => inner.path.length === 1 && valueAt(value, inner.path as Path) === undefined)
+    .map((inner) => String(inner.path[0]));
+  return unknown.some((key) => nearest(key, missing) !== undefined);
 }
 
 function kindOf(issue: Issue): string {
