@@ -17,7 +17,7 @@ function short(value: number): string {
   if (size >= 10) return value.toFixed(0);
   if (size >= 1) return value.toFixed(1).replace(/\.0$/, '');
   if (size === 0) return '0';
-  return value.toPrecision(2);
+  return String(Number(value.toPrecision(2)));
 }
 
 /** A share as a whole percentage: `31 %`. */

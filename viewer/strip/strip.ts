@@ -89,7 +89,7 @@ export function strip(data: StripData, events: StripEvents): TemplateResult {
         ${Array.from(
           { length: count },
           (_, t) => html`<span class=${t === data.generation ? 'now' : t > data.reached ? 'ahead' : ''}
-            >${t === count - 1 ? `${t}\u00a0children` : t}</span
+            >${t === count - 1 && count < 14 ? `${t}\u00a0children` : t}</span
           >`,
         )}
       </div>
