@@ -10,7 +10,19 @@ import { instantiate } from './host.js';
 
 interface Exports {
   readonly memory: { readonly buffer: ArrayBuffer; grow(pages: number): number };
-  means(upward: number, count: number, start: number, target: number, wealth: number, own: number, out: number): void;
+  means(
+    upward: number,
+    count: number,
+    start: number,
+    target: number,
+    wealth: number,
+    own: number,
+    out: number,
+    scale: number,
+    selfWeight: number,
+    common: number,
+    weight: number,
+  ): void;
 }
 
 /** Households a call serves. */
@@ -38,6 +50,21 @@ class RowKernel {
 
   /** Mean, or mean of the richer, over each row; own wealth where there are none. False if memory ran out. */
   means(upward: boolean, start: Uint32Array, target: Uint32Array, wealth: Float64Array, out: Float64Array): boolean {
+    return this.mixes(upward, start, target, wealth, 1, 0, 0, 1, out);
+  }
+
+  /** scale·(selfWeight·y_i + common + weight·mean_i), mean as in `means`. False if memory ran out. */
+  mixes(
+    upward: boolean,
+    start: Uint32Array,
+    target: Uint32Array,
+    wealth: Float64Array,
+    scale: number,
+    selfWeight: number,
+    common: number,
+    weight: number,
+    out: Float64Array,
+  ): boolean {
     const n = wealth.length;
     if ((this.owner !== target || this.wealth.length !== n) && !this.load(target, n)) return false;
     this.wealth.set(wealth);
@@ -45,7 +72,19 @@ class RowKernel {
     for (let first = 0; first < n; first += CHUNK) {
       const count = Math.min(CHUNK, n - first);
       this.start.set(start.subarray(first, first + count + 1));
-      this.module.means(upward ? 1 : 0, count, START, TARGET, at, at + 8 * first, OUT);
+      this.module.means(
+        upward ? 1 : 0,
+        count,
+        START,
+        TARGET,
+        at,
+        at + 8 * first,
+        OUT,
+        scale,
+        selfWeight,
+        common,
+        weight,
+      );
       out.set(count === CHUNK ? this.out : this.out.subarray(0, count), first);
     }
     return true;

@@ -10,6 +10,7 @@
  */
 import { ShapeError } from '../../network/errors.js';
 import type { Ties } from '../../network/graph.js';
+import { rowKernel } from '../kernel/rows.js';
 import { type Rows, rowStatistic, rowStatistics, type Scratch, SecondCircle } from './row-statistic.js';
 import { compensatedSum, lowerBound, quantileOfSorted, similarityMeans, upwardMeans } from './set-statistic.js';
 import type { Households, Milestone, Part } from './types.js';
@@ -66,9 +67,11 @@ interface Source {
   readonly part: Part;
   /** Weight in each milestone. */
   readonly weights: number[];
-  /** A value a household, or null for `self` (wealth itself) and for one number for everyone. */
+  /** A value a household; not so for `self` (wealth itself) and for one number for everyone. */
+  readonly perHousehold: boolean;
+  /** Those values, once they have been needed. */
   column: Float64Array | null;
-  /** The one number, when `column` is null. */
+  /** The one number. */
   scalar: number;
 }
 
@@ -96,7 +99,7 @@ class CompiledReference implements Reference {
     this.ties = ties;
     this.limit = limit;
     this.circles = null;
-    this.sources = distinctSources(milestones, households.n);
+    this.sources = distinctSources(milestones);
     let longest = 0;
     for (let i = 0; i < ties.n; i++) longest = Math.max(longest, ties.start[i + 1] - ties.start[i]);
     this.scratch = { values: new Float64Array(longest) };
@@ -122,7 +125,13 @@ class CompiledReference implements Reference {
     const n = this.households.n;
     if (wealth.length !== n) throw new ShapeError('wealth', wealth.length, n, 'one value per household');
     isolated.fill(0);
-    for (const source of this.sources) this.compute(source, wealth, isolated);
+    const formsAnew = factor === null && (inherited === null || this.persistence === 0);
+    const straight = formsAnew ? this.straightSource() : null;
+    for (const source of this.sources) if (source !== straight) this.compute(source, wealth, isolated);
+    if (straight !== null) {
+      if (this.mixStraight(straight, wealth, out[0], isolated)) return;
+      this.compute(straight, wealth, isolated);
+    }
     for (let m = 0; m < this.milestones.length; m++) {
       this.mix(m, wealth, inherited === null ? null : inherited[m], out[m], factor);
     }
@@ -173,7 +182,9 @@ class CompiledReference implements Reference {
   }
 
   private compute(source: Source, wealth: Float64Array, isolated: Uint8Array): void {
-    const { part, column } = source;
+    const { part } = source;
+    if (source.perHousehold) source.column ??= new Float64Array(wealth.length);
+    const column = source.column;
     switch (part.from) {
       case 'self':
         return;
@@ -216,6 +227,31 @@ class CompiledReference implements Reference {
     }
   }
 
+  /** The one statistic of the one milestone that the row kernel can mix as it goes, without a column in between. */
+  private straightSource(): Source | null {
+    const columns = this.sources.filter((source) => source.perHousehold);
+    if (this.milestones.length !== 1 || columns.length !== 1) return null;
+    const { from, statistic } = columns[0].part;
+    const plain = statistic === 'upward_mean' || (statistic === 'mean' && this.ties.weight === null);
+    return from === 'neighbours' && plain ? columns[0] : null;
+  }
+
+  private mixStraight(source: Source, wealth: Float64Array, out: Float64Array, isolated: Uint8Array): boolean {
+    const { start, target } = this.ties;
+    let own = 0;
+    let common = 0;
+    for (const other of this.sources) {
+      if (other.part.from === 'self') own += other.weights[0];
+      else if (other !== source) common += other.weights[0] * other.scalar;
+    }
+    const { scale } = this.milestones[0];
+    const upward = source.part.statistic === 'upward_mean';
+    const mixed = rowKernel()?.mixes(upward, start, target, wealth, scale, own, common, source.weights[0], out);
+    if (mixed !== true) return false;
+    for (let i = 0; i < wealth.length; i++) if (start[i] === start[i + 1]) isolated[i] = 1;
+    return true;
+  }
+
   private mix(
     m: number,
     wealth: Float64Array,
@@ -233,9 +269,9 @@ class CompiledReference implements Reference {
       const w = source.weights[m];
       if (w === 0) continue;
       if (source.part.from === 'self') own += w;
-      else if (source.column === null) common += w * source.scalar;
+      else if (!source.perHousehold) common += w * source.scalar;
       else {
-        columns.push(source.column);
+        columns.push(source.column!);
         weights.push(w);
       }
     }
@@ -256,7 +292,7 @@ class CompiledReference implements Reference {
   }
 }
 
-function distinctSources(milestones: readonly Milestone[], n: number): Source[] {
+function distinctSources(milestones: readonly Milestone[]): Source[] {
   const sources = new Map<string, Source>();
   milestones.forEach((milestone, m) => {
     for (const part of milestone.mix) {
@@ -270,7 +306,8 @@ function distinctSources(milestones: readonly Milestone[], n: number): Source[] 
         source = {
           part,
           weights: milestones.map(() => 0),
-          column: single ? null : new Float64Array(n),
+          perHousehold: !single,
+          column: null,
           scalar: 0.5,
         };
         sources.set(key, source);

@@ -302,10 +302,13 @@ function reportMemory(n: number): void {
     const households = householdsOf(n, model);
     const engine = createEngine(model, households, ties);
     const generation = makeGeneration(n, model.milestones.length);
-    const bytes = bytesOf([households, engine, generation]) - bytesOf([ties]);
+    generation.wealth.fill(1);
+    engine.step(new Draws(SEED, 0), 0, generation, null);
+    // besides: the row kernel's copy of wealth and of the ties
+    const bytes = bytesOf([households, engine, generation]) - bytesOf([ties]) + 8 * n;
     console.log(
       `memory, ${model.milestones.length} milestone(s): ${(bytes / n).toFixed(1)} bytes a household, ` +
-        `${ties.target.byteLength / ties.target.length} a tie end and ${(ties.start.byteLength / n).toFixed(0)} a row of ties`,
+        `${ties.target.byteLength / ties.target.length + 4} a tie end and ${(ties.start.byteLength / n).toFixed(0)} a row of ties`,
     );
   }
 }
