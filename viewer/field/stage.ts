@@ -40,6 +40,12 @@ const GLIDE = 620;
 const MOVE = 420;
 /** Milliseconds after its arrival in which a halo grows quiet. */
 const FADE = 1400;
+/** Ties drawn at rest, as a multiple of those drawn while something moves: one slower frame, not a stall. */
+const REST_TIES = 8;
+/** Milliseconds without a movement after which the fields are at rest. */
+const SETTLE = 260;
+/** Households a field from which halos are quiet at once: every further frame would keep the reader waiting. */
+const MANY = 20000;
 /** Milliseconds a frame may take while something moves, before fewer ties are drawn. */
 const BUDGET = 26;
 
@@ -361,7 +367,7 @@ export class Stage {
       this.#glide = Math.min(1, Math.max(0, (now - this.#glideStart) / GLIDE));
       if (this.#glide >= 1) {
         this.#glideStart = -1;
-        this.#arrived = now;
+        this.#arrived = (this.#fields[0].marks?.n ?? 0) < MANY ? now : -1;
       }
     }
     if (this.#cameraStart >= 0) {
@@ -419,7 +425,9 @@ export class Stage {
       Math.max(1.15, Math.min(3.4 * (this.#rem / 13), 0.228 * Math.sqrt((left.box.width * left.box.height) / n))) *
       Math.min(3, Math.sqrt(this.#camera.zoom));
     const most = Math.max(left.marks.ties, right.marks.ties);
-    const ties = scene.tiesShown ? Math.min(most, moving ? Math.round(this.#sample) : 120000) : 0;
+    const ties = scene.tiesShown
+      ? Math.min(most, moving ? Math.round(this.#sample) : Math.round(REST_TIES * this.#sample))
+      : 0;
     const [r, gr, b] = rgb(this.#tokens.ink);
     // the fewer lines, the stronger each: the tone of the whole stays
     const strength =
@@ -443,9 +451,9 @@ export class Stage {
     this.#grid(scene);
     this.#tint(scene);
     this.#overlay(scene);
-    // half the frames do for bars: painting them costs as much as the marks
+    // a third of the frames do for bars: painting them costs as much as the marks
     this.#frame++;
-    if (this.#glide >= 1 || this.#frame % 2 === 0) this.#drawPyramid(scene, g);
+    if (this.#glide >= 1 || this.#frame % 3 === 0) this.#drawPyramid(scene, g);
   }
 
   /** Halos are strong while marks arrive and quiet afterwards. */
@@ -694,7 +702,7 @@ export class Stage {
   }
 
   #keepMoving(): void {
-    this.#moving = performance.now() + 140;
+    this.#moving = performance.now() + SETTLE;
     this.#ask();
   }
 
