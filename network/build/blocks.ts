@@ -89,23 +89,31 @@ function probabilityBetweenPlaces(spec: BlocksSpec, sorted: Cells, n: number): n
   return p;
 }
 
-/** Expected ties inside its place of a household of each place. */
+/**
+ * Expected ties inside its place of a household of each place. A place too small (or too large) for what is asked has
+ * the nearest it can have, so that a few odd ones among places of uneven size do not stop a study; when more than half
+ * of the households live in such places the request cannot be met and is refused.
+ */
 function insideDegrees(spec: BlocksSpec, sorted: Cells, n: number, outside: number): Float64Array {
   const d = spec.mean_degree;
   const inside = new Float64Array(sorted.places);
+  let small = 0;
+  let large = 0;
   for (let p = 0; p < sorted.places; p++) {
     const size = sorted.placeStart[p + 1] - sorted.placeStart[p];
     if (size === 0) continue;
     const k = d - outside * (n - size);
     // rounding may leave 1e-15 of a tie where exactly none, or exactly everyone, was asked for
-    if (k > size - 1 + 1e-9 * d) {
+    if (k > size - 1 + 1e-9 * d) small += size;
+    if (k < -1e-9 * d) large += size;
+    if (small > n / 2) {
       throw infeasible(
         'mean_degree',
-        `place ${p} has ${size} households, too few for ${round(k)} ties each inside it`,
+        `place ${p} has ${size} ${size === 1 ? 'household' : 'households'}, too few for ${round(k)} ties each inside it, and most places are like it`,
         `lower mean_degree or within_place, or make places larger than ${Math.ceil(k)} households`,
       );
     }
-    if (k < -1e-9 * d) {
+    if (large > n / 2) {
       throw infeasible(
         'within_place',
         `households of place ${p} (${size} of ${n}) would have ${round(d - k)} ties to other places, more than mean_degree`,

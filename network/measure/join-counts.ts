@@ -64,7 +64,7 @@ export function joinCounts(ties: Ties, mark: ArrayLike<number>, style: WeightSty
   const share = (a: number, k: number): number => falling(a, k) / falling(n, k);
   const rest = s0 * s0 + s1 - s2;
   const same = (a: number): { expected: number; variance: number } => {
-    const expected = 0.5 * s0 * share(a, 2);
+    const expected = a < 2 ? 0 : 0.5 * s0 * share(a, 2);
     const variance = 0.25 * (s1 * share(a, 2) + (s2 - 2 * s1) * share(a, 3) + rest * share(a, 4)) - expected * expected;
     return { expected, variance };
   };

@@ -22,7 +22,7 @@ export interface LocalPermutation {
 
 /**
  * @param value - length n, finite
- * @param permutations - reference sets a degree; p is never below 2 / (permutations + 1)
+ * @param permutations - reference sets a degree; p is never below 2 / (permutations + 1), and NaN without any
  * @returns see {@link LocalPermutation}. Cost O(different degrees · permutations · degree + n log permutations + m).
  */
 export function localPermutation(
@@ -37,6 +37,7 @@ export function localPermutation(
   const n = households.length;
   const p = new Float64Array(ties.n).fill(NaN);
   const side = new Int8Array(ties.n);
+  if (permutations === 0) return { p, side };
   const byDegree = new Map<number, number[]>();
   for (const i of households) {
     const k = start[i + 1] - start[i];

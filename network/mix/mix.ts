@@ -11,7 +11,7 @@ import { objective } from './objective.js';
 import { rewirable } from './rewirable.js';
 import type { MixResult, MixShare, MixSpec, MixToward } from './spec.js';
 import { swapShare } from './swap-share.js';
-import { swapToward, TOLERANCE } from './swap-toward.js';
+import { swapToward, TOLERANCE, toleranceOf } from './swap-toward.js';
 import { TieSlots } from './tie-slots.js';
 
 /**
@@ -63,7 +63,7 @@ function mixShare(ties: Ties, spec: MixShare, uniform: Uniform): MixResult {
 
 function mixToward(ties: Ties, spec: MixToward, labels: Labels, uniform: Uniform): MixResult {
   const aim = objective(spec.target, ties, labels);
-  const name = spec.target.replaceAll('_', ' ');
+  const name = spec.target;
   if (aim === null) {
     throw new InputError({
       code: 'target-undefined',
@@ -85,7 +85,7 @@ function mixToward(ties: Ties, spec: MixToward, labels: Labels, uniform: Uniform
   const slots = TieSlots.of(ties);
   const canSwap = rewirable(slots, uniform);
   const result = canSwap ? swapToward(slots, aim, spec.value, uniform) : still(slots, aim);
-  const outOfReach = Math.abs(result.reached - spec.value) > TOLERANCE;
+  const outOfReach = Math.abs(result.reached - spec.value) > toleranceOf(aim);
   if (outOfReach && spec.best_effort !== true) {
     throw new InputError({
       code: 'target-out-of-reach',

@@ -16,6 +16,8 @@ export interface Objective {
   term(i: number, j: number): number;
   /** Lowest and highest value that the definition allows. */
   readonly range: readonly [number, number];
+  /** How far a swap moves the value where it moves it by whole steps, 0 where values lie dense. */
+  readonly step: number;
 }
 
 /**
@@ -52,6 +54,7 @@ function rankAssortativity(ties: Ties, labels: Labels): Objective | null {
     term: (i, j) => x[i] * x[j],
     value: (sum) => sum * scale,
     range: [-1, 1],
+    step: 0,
   };
 }
 
@@ -60,10 +63,12 @@ function connectedness(ties: Ties, labels: Labels): Objective | null {
   const side = aboveMedian(labels.wealth);
   const share = new Float64Array(n);
   let low = 0;
+  let ends = 0;
   for (let i = 0; i < n; i++) {
     const k = start[i + 1] - start[i];
     if (side[i] >= 0 || k === 0) continue;
     low++;
+    ends += k;
     share[i] = 1 / k;
   }
   if (low === 0) return null;
@@ -72,6 +77,8 @@ function connectedness(ties: Ties, labels: Labels): Objective | null {
     term: (i, j) => (side[j] > 0 ? share[i] : 0) + (side[i] > 0 ? share[j] : 0),
     value: (sum) => sum * scale,
     range: [0, 2],
+    // one tie of a household with as many ties as the ties below the median have on average
+    step: 4 / Math.max(1, ends),
   };
 }
 
@@ -83,5 +90,7 @@ function externalInternal(ties: Ties, labels: Labels): Objective | null {
     term: (i, j) => (group[i] === group[j] ? -1 : 1),
     value: (sum) => sum / m,
     range: [-1, 1],
+    // two ties within groups become two across them, or the other way round
+    step: 4 / m,
   };
 }

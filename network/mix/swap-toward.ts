@@ -12,6 +12,15 @@ import type { TieSlots } from './tie-slots.js';
 
 /** A target counts as reached this near: half a point, well below what two draws of one network differ by. */
 export const TOLERANCE = 0.005;
+
+/**
+ * On a small network a single swap may move the value further than that: then half a swap is near enough, up to 0.02
+ * (a network of a hundred ties). Smaller ones are refused rather than called reached.
+ */
+export function toleranceOf(aim: Objective): number {
+  return Math.max(TOLERANCE, Math.min(aim.step / 2, 0.02));
+}
+
 /** The search goes on to here where it can: cheap on a large network, and arms then differ by their target alone. */
 const CLOSE = 1e-4;
 
@@ -41,7 +50,7 @@ export function swapToward(slots: TieSlots, aim: Objective, goal: number, unifor
   const neutralAfter = Math.max(m, 1000);
   while (m > 1) {
     const off = Math.abs(value - goal);
-    if (off <= CLOSE || (off <= TOLERANCE && idle >= m) || idle >= patience) break;
+    if (off <= CLOSE || (off <= toleranceOf(aim) && idle >= m) || idle >= patience) break;
     tried++;
     idle++;
     const e = Math.floor(uniform() * m);

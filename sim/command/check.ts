@@ -11,7 +11,7 @@ import { factsOf, householdsOf, runReplicate } from '../results/run-replicate.js
 import { memoryStore } from '../results/store.js';
 import type { Study } from '../study/complete.js';
 import type { Prepared } from '../study/replicate.js';
-import { amount, duration, size } from './progress.js';
+import { amount, counted, duration, size } from './progress.js';
 import { placed, readStudy } from './study-files.js';
 
 /** What a run is expected to need. */
@@ -152,10 +152,10 @@ function text(study: Study, needs: Needs): string {
   const { replicates, generations, arms } = study;
   return [
     `${study.study}: no problems found.`,
-    `${arms.length} arms × ${replicates} replicates × ${generations} generations × ${amount(needs.households)} households ` +
+    `${counted(arms.length, 'arm')} × ${counted(replicates, 'replicate')} × ${counted(generations, 'generation')} × ${amount(needs.households)} households ` +
       `= ${amount(needs.household_generations)} household-generations`,
-    `memory  about ${size(needs.memory_bytes)} with ${needs.threads} ${needs.threads === 1 ? 'thread' : 'threads'}`,
+    `memory  about ${size(needs.memory_bytes)} with ${counted(needs.threads, 'thread')}`,
     `disk    about ${size(needs.disk_bytes)} for the results, twice that while they are written`,
-    `time    about ${duration(needs.seconds)} with ${needs.threads} ${needs.threads === 1 ? 'thread' : 'threads'} on this machine`,
+    `time    about ${duration(needs.seconds)} with ${counted(needs.threads, 'thread')} on this machine`,
   ].join('\n');
 }

@@ -88,3 +88,8 @@ export function progress(total: number, unit: string, perUnit: number, quiet: bo
     stop: () => {},
   };
 }
+
+/** A count with its noun: `1 arm`, `2 arms`. */
+export function counted(n: number, noun: string): string {
+  return `${n} ${noun}${n === 1 ? '' : 's'}`;
+}

@@ -21,7 +21,7 @@ import { portable } from '../study/portable.js';
 import { VERSION } from '../version.js';
 import { addEstimatesAndReport } from './estimate-after.js';
 import { wholeNumber } from './options.js';
-import { duration, progress } from './progress.js';
+import { counted, duration, progress } from './progress.js';
 import type { Outcome, WorkerSetup } from './run-worker.js';
 import { placed, readStudy, type StudyOnDisk } from './study-files.js';
 
@@ -78,8 +78,8 @@ async function run(given: string | undefined, options: RunOptions): Promise<void
   const done = folder.completeReplicates();
   const todo = Array.from({ length: study.replicates }, (_, r) => r).filter((r) => !done.includes(r));
   say(
-    `${study.study}: ${arms} ${arms === 1 ? 'arm' : 'arms'}, ${study.replicates} ` +
-      `${study.replicates === 1 ? 'replicate' : 'replicates'}, ${study.generations} generations, ${n} households` +
+    `${study.study}: ${counted(arms, 'arm')}, ${counted(study.replicates, 'replicate')}, ` +
+      `${counted(study.generations, 'generation')}, ${n} households` +
       (done.length > 0 ? `; ${done.length} replicates are there already` : ''),
   );
 
@@ -98,7 +98,14 @@ async function run(given: string | undefined, options: RunOptions): Promise<void
     console.log(JSON.stringify({ folder: folder.out, seconds, answer, problems: added.problems }, null, 2));
   } else {
     for (const problem of added.problems) console.error(describe(problem));
-    console.log(finalText(answer, folder.out, seconds, added.estimates !== null));
+    console.log(
+      finalText(
+        answer,
+        folder.out,
+        seconds,
+        folder.manifest.files.map((file) => file.name),
+      ),
+    );
   }
   if (options.view === true) await viewAfter(folder.out, quiet);
 }
@@ -249,19 +256,25 @@ function shown(path: string): string {
   return short.startsWith('..') ? path : short;
 }
 
-function finalText(answer: Answer, out: string, seconds: number, estimated: boolean): string {
+/** Files a reader opens first, where the run made them. */
+const DESCRIBED: readonly [file: string, what: string][] = [
+  ['report.html', 'the answer with figures and the model, to read, print or send'],
+  ['indicators.csv', 'every measure, by arm, replicate and generation'],
+  ['contrasts.csv', 'arm against arm, with intervals'],
+  ['panel.parquet', 'every household in every generation, for regressions'],
+  ['panel.csv', 'the same as text'],
+  ['estimates.csv', "the study's regressions; panel.R and panel.py rerun them"],
+  ['codebook.md', 'what each column means'],
+];
+
+function finalText(answer: Answer, out: string, seconds: number, files: readonly string[]): string {
   const folder = shown(out);
   return [
     '',
     answerText(answer),
     '',
     `Results are in ${folder} (${duration(seconds)}):`,
-    '  report.html      the answer with figures and the model, to read, print or send',
-    '  indicators.csv   every measure, by arm, replicate and generation',
-    '  contrasts.csv    arm against arm, with intervals',
-    '  panel.parquet    every household in every generation, for regressions',
-    ...(estimated ? ["  estimates.csv    the study's regressions; panel.R and panel.py rerun them"] : []),
-    '  codebook.md      what each column means',
+    ...DESCRIBED.filter(([file]) => files.includes(file)).map(([file, what]) => `  ${file.padEnd(17)}${what}`),
     '',
     'Next:',
     `  rungsight view ${folder}         look at it in the browser`,

@@ -65,6 +65,21 @@ function shownPath(file: string): string {
   return short.startsWith('..') ? file : short;
 }
 
+/** Why a file could not be read, in words. */
+function reasonOf(error: unknown): string {
+  switch ((error as NodeJS.ErrnoException).code) {
+    case 'ENOENT':
+      return 'there is no such file';
+    case 'EISDIR':
+      return 'this is a folder';
+    case 'EACCES':
+    case 'EPERM':
+      return 'you may not read this file';
+    default:
+      return `the file cannot be read (${(error as Error).message})`;
+  }
+}
+
 /** A text file as UTF-8. @throws {InputError} when it cannot be read or is no text */
 export function readText(file: string, shown: string): string {
   let bytes: Buffer;
@@ -74,8 +89,8 @@ export function readText(file: string, shown: string): string {
     throw new InputError({
       code: 'cannot-read',
       place: shown,
-      problem: `the file cannot be read (${(error as NodeJS.ErrnoException).code ?? 'unknown reason'})`,
-      remedy: 'check that it exists and that you may read it',
+      problem: reasonOf(error),
+      remedy: 'check the path, and that you may read the file',
     });
   }
   try {

@@ -465,7 +465,8 @@ export const INDICATORS: readonly Indicator[] = [
     name: 'join_count_p',
     meaning:
       'Permutation p-value of as many ties between frustrated households or more (normal approximation from 50,000)',
-    formula: '(1 + permutations with at least as many) / (1 + permutations)',
+    formula:
+      '(1 + permutations with at least as many) / (1 + permutations); drawing stops once a tenth of the permutations have reached it (p above 0.1)',
     source: 'Cliff and Ord 1981',
     unit: 'probability',
     needs: ['decision', 'ties'],
@@ -493,7 +494,8 @@ export const INDICATORS: readonly Indicator[] = [
   {
     name: 'moran_p',
     meaning: 'Two-sided permutation p-value of Moran’s I (normal approximation from 50,000 households with ties)',
-    formula: '(1 + permutations as far from the expectation) / (1 + permutations)',
+    formula:
+      '(1 + permutations as far from the expectation) / (1 + permutations); drawing stops once a tenth of the permutations have reached it (p above 0.1)',
     source: 'Cliff and Ord 1981',
     unit: 'probability',
     needs: ['wealth', 'ties'],
@@ -604,7 +606,8 @@ export const INDICATORS: readonly Indicator[] = [
     name: 'pocket_p',
     meaning:
       'Permutation p-value of the share of core households (in a pocket or not); empty while nobody has been frustrated for long enough',
-    formula: '(1 + permutations with at least as many core households) / (1 + permutations)',
+    formula:
+      '(1 + permutations with at least as many core households) / (1 + permutations); drawing stops once a tenth of the permutations have reached it (p above 0.1)',
     source: 'this project',
     unit: 'probability',
     needs: ['decision', 'pockets'],
@@ -682,6 +685,24 @@ export const INDICATORS: readonly Indicator[] = [
     unit: 'share',
     needs: ['decision', 'causes'],
     of: (c) => localShare(causesOfContext(c)),
+  },
+  {
+    name: 'isolation_by_place',
+    meaning: 'Isolation of groups in their places: share of its own group in a household’s place, mean over households',
+    formula: 'mean over households of (members of its group in its place / households of its place)',
+    source: 'Bell 1954; Massey and Denton 1988',
+    unit: 'share',
+    needs: ['ties'],
+    of: (c) => c.ties.isolationPlace,
+  },
+  {
+    name: 'isolation_by_ties',
+    meaning: 'Isolation of groups by ties: share of its own group among a household’s ties, mean over groups’ members',
+    formula: 'mean over households of its group’s mean share of own-group ties',
+    source: 'Bell 1954; by ties: this project',
+    unit: 'share',
+    needs: ['ties'],
+    of: (c) => c.ties.isolationTies,
   },
   {
     name: 'sd_log_wealth',

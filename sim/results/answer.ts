@@ -114,7 +114,7 @@ export function answerOf(study: Study, cube: IndicatorCube, lives: readonly Pock
     question: question(arms),
     setting:
       `${households === undefined ? 'The households of the file' : `${grouped(households)} households`}` +
-      `${groups !== undefined && groups > 1 ? ` in ${groups} places` : ''}, ${study.generations} generations, ` +
+      `${groups !== undefined && groups > 1 ? ` in ${groups} places` : ''}, ${study.generations} ${study.generations === 1 ? 'generation' : 'generations'}, ` +
       `${cube.replicates} ${cube.replicates === 1 ? 'replicate' : 'replicates'}` +
       `${arms.length > 1 ? '; every arm has the same households and the same luck' : ''}.`,
     arms,
@@ -158,7 +158,8 @@ function frustrationSentence(
       named: [top],
     };
   }
-  const sure = rows.filter((row) => row.ci_low > 0 || row.ci_high < 0);
+  // looking for the generation that differs most is looking many times (Bonferroni)
+  const sure = rows.filter((row) => (row.ci_low > 0 || row.ci_high < 0) && !(row.p_value * rows.length > 0.05));
   const end = rows[rows.length - 1]!;
   if (sure.length === 0) {
     const top = largest(rows);
@@ -240,6 +241,12 @@ function pocketSentences(
   arms: readonly string[],
 ): string[] {
   if (life.pockets === 0) return [`'${arm}' has no pocket of frustration in any replicate.`];
+  if (!life.tested) {
+    return [
+      `'${arm}' has ${life.pockets} pockets over all replicates; whether they are more than chance was not tested ` +
+        '(pockets.permutations is 0).',
+    ];
+  }
   if (life.significant === 0) {
     return [
       `'${arm}' has ${life.pockets} pockets over all replicates, none larger than chance would make (every p above 0.05).`,

@@ -77,7 +77,7 @@ export const CONVENTIONS: Codebook['conventions'] = [
   },
   {
     title: 'Ties',
-    text: 'Means over ties count every tie the same; weights of ties enter reference groups only. A household without ties has no such mean.',
+    text: 'Means over ties, Moran’s I, join counts, assortativities and economic connectedness count every tie the same; weights of ties enter reference groups only. A household without ties has no such mean.',
   },
   {
     title: 'Ranks and fifths',

@@ -22,6 +22,8 @@ export interface PocketSummary {
   /** Over all replicates. */
   readonly pockets: number;
   readonly significant: number;
+  /** False when no pocket has a p-value. */
+  readonly tested: boolean;
   readonly significantPerReplicate: number;
   /** Of those beyond chance, from here on. First generation of any; the generation with most of them. */
   readonly firstGeneration: number;
@@ -57,6 +59,7 @@ export function pocketSummary(rows: readonly PocketStepRow[], replicates: number
   return {
     pockets: lives.size,
     significant: beyond.length,
+    tested: rows.some((row) => !Number.isNaN(row.pValue)),
     significantPerReplicate: beyond.length / replicates,
     firstGeneration: Math.min(...steps.map((row) => row.generation)),
     peakGeneration: peak?.[0] ?? NaN,

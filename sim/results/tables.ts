@@ -346,7 +346,7 @@ export function tablesOf(facts: Facts): Table[] {
           'number',
           '',
           'Share of permutations of statuses whose largest pocket is at least as large.',
-          '(1 + count)/(1 + permutations)',
+          '(1 + count)/(1 + permutations); drawing stops once a tenth of the permutations have reached it (p above 0.1)',
           `${ENDED}, or no permutations were asked for`,
         ),
         field(

@@ -284,6 +284,29 @@ export function overridePreferences(base: PreferencesFile, over: PartialPreferen
   return merged;
 }
 
+/** What a group in an arm ends up with, once both have been laid over the study's preferences. */
+function checkGroupsInArm(study: StudyFile, arm: ArmFile, a: number, found: StudyProblem[]): void {
+  if (arm.preferences === undefined) return;
+  const own = overridePreferences(study.preferences, arm.preferences);
+  for (const group of study.population.groups ?? []) {
+    if (group.preferences === undefined) continue;
+    const merged = overridePreferences(own, group.preferences);
+    const missing =
+      merged.milestone_shape === 'gain-loss'
+        ? merged.loss_aversion === undefined && 'loss_aversion, at least 1'
+        : merged.milestone_curvature === undefined && merged.curvature >= 1 && 'milestone_curvature between 0 and 1';
+    if (missing === false) continue;
+    found.push(
+      problem(
+        'missing-key',
+        ['arms', a, 'preferences'],
+        `in arm '${arm.name}', group '${group.name}' has milestone shape ${merged.milestone_shape} and curvature ${merged.curvature}`,
+        `add ${missing} to the arm or the group`,
+      ),
+    );
+  }
+}
+
 function checkOverride(base: PreferencesFile, over: PartialPreferencesFile, path: Path, found: StudyProblem[]): void {
   const before = found.length;
   checkPreferences(overridePreferences(base, over), path, found);
@@ -349,6 +372,7 @@ function checkArms(study: StudyFile, found: StudyProblem[]): void {
     checkNetwork(arm, a, names, n, found);
     checkArmTechnology(study, arm, a, found);
     if (arm.preferences !== undefined) checkOverride(study.preferences, arm.preferences, at('preferences'), found);
+    checkGroupsInArm(study, arm, a, found);
     if (arm.reference?.milestones !== undefined) {
       checkReference(arm.reference.milestones, at('reference', 'milestones'), found);
     }

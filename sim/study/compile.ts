@@ -4,7 +4,7 @@
 import { exp } from '../../network/elementary.js';
 import type { Households, Milestone, Model, Preferences, Technology } from '../model/types.js';
 import { overridePreferences } from './check.js';
-import { type ArmSettings, armSettings, type Study } from './complete.js';
+import { type ArmSettings, armSettings, type Study, withCurvature } from './complete.js';
 import type { Population } from './population.js';
 import type { ArmFile, PreferencesFile } from './schema.js';
 
@@ -52,7 +52,7 @@ export function compileHouseholds(study: Study, arm: ArmFile, population: Popula
 
 function groupPreferences(study: Study, settings: ArmSettings, name: string): PreferencesFile {
   const group = study.population.groups?.find((candidate) => candidate.name === name);
-  return overridePreferences(settings.preferences, group?.preferences);
+  return withCurvature(overridePreferences(settings.preferences, group?.preferences));
 }
 
 function technology(settings: ArmSettings): Technology {
@@ -63,6 +63,10 @@ function technology(settings: ArmSettings): Technology {
 }
 
 function enginePreferences(file: PreferencesFile): Preferences {
+  const threshold = file.milestone_shape === 'threshold';
+  if (threshold ? file.milestone_curvature === undefined : file.loss_aversion === undefined) {
+    throw new Error('preferences without the number their milestone shape needs: check.ts lets none pass');
+  }
   return {
     curvature: file.curvature,
     childWeight: file.child_weight,

@@ -66,7 +66,7 @@ export function completeStudy(file: StudyFile): Study {
 }
 
 /** Milestone curvature is the curvature unless given. */
-function withCurvature(preferences: PreferencesFile): PreferencesFile {
+export function withCurvature(preferences: PreferencesFile): PreferencesFile {
   if (preferences.milestone_shape !== 'threshold' || preferences.milestone_curvature !== undefined) return preferences;
   return { ...preferences, milestone_curvature: preferences.curvature };
 }

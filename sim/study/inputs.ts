@@ -5,7 +5,7 @@
  * fault is raised with file, row and column, all of a file's at once.
  */
 
-import { namedSize } from '../../network/build/named.js';
+import { NAMED_GRAPHS, namedSize } from '../../network/build/named.js';
 import { InputError, nearest, type Problem } from '../../network/errors.js';
 import { type CsvTable, readCsv } from '../../network/exchange/csv.js';
 import { readTies } from '../../network/exchange/read-ties.js';
@@ -123,7 +123,7 @@ export async function loadInputs(parsed: ParsedStudy, read: ReadText): Promise<I
       degrees[path] = readDegrees(texts[path]!, path, column, n);
     }
     if (network.kind === 'named') {
-      const size = namedSize(network.name);
+      const size = sizeOfNamed(parsed, network.name, a);
       if (size !== null && size !== n) {
         throw new InputError({
           code: 'size-mismatch',
@@ -135,6 +135,22 @@ export async function loadInputs(parsed: ParsedStudy, read: ReadText): Promise<I
     }
   });
   return { households, sample, ties, degrees, texts };
+}
+
+/** Households of a graph known by name, null when it takes any number. */
+function sizeOfNamed(parsed: ParsedStudy, name: string, arm: number): number | null {
+  try {
+    return namedSize(name);
+  } catch (error) {
+    if (!(error instanceof InputError)) throw error;
+    const guess = nearest(name, NAMED_GRAPHS);
+    throw new InputError({
+      code: 'unknown-value',
+      place: parsed.place(['arms', arm, 'network', 'name']),
+      problem: `there is no graph named '${name}'`,
+      remedy: guess === undefined ? `use one of ${NAMED_GRAPHS.join(', ')}` : `did you mean '${guess}'?`,
+    });
+  }
 }
 
 /** Problems gathered while a table is read; a file with thousands of faults shows the first few. */

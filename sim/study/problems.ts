@@ -70,6 +70,16 @@ export function problemsOf(issue: Issue, raw: unknown, keysAt: (path: Path) => r
     case 'unrecognized_keys':
       return issue.keys.map((key) => {
         const keys = keysAt(path);
+        if (keys.includes(key)) {
+          const beside = Object.keys((valueAt(raw, path) ?? {}) as object).filter((other) => other !== key);
+          return {
+            code: 'keys-exclude',
+            path: [...path, key],
+            atKey: true,
+            problem: `'${key}' does not go with ${beside.map((other) => `'${other}'`).join(', ')} in ${where}`,
+            remedy: 'keep one or the other',
+          };
+        }
         const guess = nearest(key, keys);
         return {
           code: 'unknown-key',

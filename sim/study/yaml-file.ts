@@ -46,8 +46,18 @@ export function readYaml(text: string, file: string, kind: Kind): YamlFile {
         return {
           code: duplicate ? 'duplicate-key' : 'bad-yaml',
           place: placeAt(error.pos[0]),
-          problem: duplicate ? 'this key stands twice' : `this is not valid YAML (${error.message.split('\n')[0]})`,
-          remedy: duplicate ? 'keep one of the two' : 'check the indentation, quotes and brackets here',
+          problem:
+            error.code === 'MULTIPLE_DOCS'
+              ? 'a second document begins here'
+              : duplicate
+                ? 'this key stands twice'
+                : `this is not valid YAML (${error.message.split('\n')[0]})`,
+          remedy:
+            error.code === 'MULTIPLE_DOCS'
+              ? 'keep one of the two (remove the line ---)'
+              : duplicate
+                ? 'keep one of the two'
+                : 'check the indentation, quotes and brackets here',
         };
       }),
     );

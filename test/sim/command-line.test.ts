@@ -66,7 +66,7 @@ describe('wrong requests', () => {
     [
       'a graph that is not there',
       ['network', 'measure', 'none.csv'],
-      /^none\.csv: the file cannot be read \(ENOENT\); /,
+      /^none\.csv: there is no such file; check the path/,
     ],
     ['mixing by nothing', ['network', 'mix', 's.yaml'], /neither --share nor --target is given; give one of them/],
   ])('%s', (_what, args, expected) => {
@@ -97,6 +97,26 @@ describe('wrong requests', () => {
       code: 'no-such-file',
       place: 'no.yaml',
     });
+  });
+});
+
+describe('odd studies', () => {
+  test('villages of very uneven size run: the smallest have what ties they can', () => {
+    const text = STUDY.replace('households: 60', 'households: 150')
+      .replace('places: 3', 'places: {count: 6, size_cv: 0.6}')
+      .replace('within_place: 0.8', 'within_place: 0.9')
+      .replace('generations: 2', 'generations: 1\nreplicates: 12');
+    writeFileSync(join(folder, 'uneven.yaml'), text);
+    expect(run('run', 'uneven.yaml', '--out', 'uneven').status).toBe(0);
+  });
+
+  test('pockets that were not tested are not called chance, and no file is named that is not there', () => {
+    const text = `${STUDY.replace('households: 60', 'households: 300').replace('generations: 2', 'generations: 4')}pockets: {permutations: 0, min_size: 2}\nkeep: {panel: none}\n`;
+    writeFileSync(join(folder, 'untested.yaml'), text);
+    const ran = run('run', 'untested.yaml', '--out', 'untested');
+    expect(ran.status).toBe(0);
+    expect(ran.out).not.toContain('none larger than chance');
+    expect(ran.out).not.toContain('panel.parquet');
   });
 });
 

@@ -382,6 +382,12 @@ const CASES: Case[] = [
     '{kind: file, path: ties.xlsx}',
     "'ties.xlsx' ends in neither .csv nor .graphml",
   ],
+  [
+    'a share beside a target',
+    '{share: 0.5}',
+    '{share: 0.5, target: e_i_group, value: 0}',
+    "'share' does not go with 'target', 'value' in arms[1].network.mixing; keep one or the other",
+  ],
   // not in this version
   [
     'programme changes',
@@ -418,6 +424,7 @@ describe('a wrong study is refused with its place and what to do', () => {
     ['only a comment', '# nothing here\n', 's.yaml:1:1: the study file is empty'],
     ['a sentence', 'hello there', 's.yaml:1:1: this is not a study'],
     ['a list', '- one\n- two\n', 's.yaml:1:1: this is not a study'],
+    ['two documents', `${GOOD}---\nstudy: another\n`, 'a second document begins here; keep one of the two'],
   ])('%s', (_what, text, expected) => {
     expect(problems(text).join('\n')).toContain(expected);
   });
