@@ -18,8 +18,8 @@ function newest(folder: string): number {
   return latest;
 }
 
-/** Serves the viewer as `rungsight view` does. */
-export async function servedSite(options: Omit<ViewerOptions, 'site'>): Promise<RunningViewer> {
+/** Folder of the built viewer. */
+export async function builtSite(): Promise<string> {
   const made = join(site, 'index.html');
   const sources = ['viewer', 'sim', 'network', 'presets'].map((folder) => newest(join(top, folder)));
   if (!existsSync(made) || statSync(made).mtimeMs < Math.max(...sources)) {
@@ -29,5 +29,10 @@ export async function servedSite(options: Omit<ViewerOptions, 'site'>): Promise<
     await build({ configFile: join(top, 'viewer', 'vite.config.ts'), logLevel: 'error' });
     process.env.NODE_ENV = environment;
   }
-  return serveViewer({ ...options, site });
+  return site;
+}
+
+/** Serves the viewer as `rungsight view` does. */
+export async function servedSite(options: Omit<ViewerOptions, 'site'>): Promise<RunningViewer> {
+  return serveViewer({ ...options, site: await builtSite() });
 }
