@@ -4,8 +4,8 @@
  *     u(y − k) + δ[μ v(z) + Σ π_m z^(1−η) B(a_m/z)/(1−η)],   E v(zε) = μ v(z) (at σ = 1, v(z) − s²/2)
  *
  * Smooth, with several peaks: each milestone is a hump of width s in log z in the marginal utility. Peaks are the
- * points where φ of planned.ts turns from negative to positive; it is followed on a grid a quarter of s apart around every
- * milestone, and each crossing is solved to rounding. A pair of crossings inside one cell would be a dent in utility
+ * points where φ of planned.ts turns from negative to positive; it is followed on a grid a quarter of s apart near every
+ * milestone (s apart farther out), and each crossing is solved to rounding. A pair of crossings inside one cell would be a dent in utility
  * too shallow to decide. "Met" is by the plan, z ≥ a.
  */
 import { exp, log } from '../../network/elementary.js';
@@ -15,11 +15,13 @@ import { expectedCrra, expectedLowGrowth } from './expected-gain-loss.js';
 import { PartialMoment } from './partial-moment.js';
 import { PlannedChoice } from './planned.js';
 import { crra } from './preferences.js';
-import { childWealthOf, investmentFor, marginalReturn } from './technology.js';
+import { childWealthOf, investmentFor } from './technology.js';
 import type { Preferences, Technology } from './types.js';
 
 /** Grid around a milestone, in standard deviations of log: beyond it B is straight or zero. */
 const REACH = 9;
+/** Nearer than this the marginal utility may turn, and the grid is fine. */
+const HUMP = 3;
 const GRID = 0.25;
 /** Coarse points in k between the plan that ignores milestones and all of wealth. */
 const COARSE = 24;
@@ -87,12 +89,10 @@ class ExpectedThresholdChoice implements Choice, RealFunction {
     for (let j = 1; j <= COARSE; j++) {
       grid[size++] = childWealthOf(this.technology, start + ((wealth - start) * j) / (COARSE + 1));
     }
-    const ratio = exp(GRID * s);
     for (let m = 0; m < M; m++) {
-      let z = a[m] * exp(-REACH * s);
-      for (let v = -REACH; v <= REACH; v += GRID) {
+      for (let v = -REACH; v <= REACH; v += v >= -HUMP && v < HUMP ? GRID : 1) {
+        const z = a[m] * exp(v * s);
         if (z > zStart && z < zEnd) grid[size++] = z;
-        z *= ratio;
       }
     }
     grid.subarray(0, size).sort();
@@ -105,7 +105,7 @@ class ExpectedThresholdChoice implements Choice, RealFunction {
       let atHigh: number;
       if (g < size) {
         high = investmentFor(this.technology, grid[g]);
-        atHigh = this.at(high);
+        atHigh = this.phi(high, grid[g]);
       } else {
         // towards y until φ is positive: at y consumption would be 0
         let rest = (wealth - low) * 0.5;
@@ -140,13 +140,24 @@ class ExpectedThresholdChoice implements Choice, RealFunction {
 
   /** φ(k) = [δ f′(k) S(f(k))]^(−1/σ) − (y − k), S = μ z^−σ + Σ π z^−η H(a/z): negative while utility rises. */
   at(k: number): number {
-    const { sigma, eta, pi, a, moment } = this;
-    const z = childWealthOf(this.technology, k);
+    return this.phi(k, childWealthOf(this.technology, k));
+  }
+
+  private phi(k: number, z: number): number {
+    const { sigma, eta, pi, a, moment, technology } = this;
     const logZ = log(z);
     let s = 0;
     for (let m = 0; m < pi.length; m++) s += pi[m] * moment.slopeAt(a[m] / z);
-    s = s * exp(-eta * logZ) + this.mu * exp(-sigma * logZ);
-    return exp(log(this.delta * marginalReturn(this.technology, k) * s) / -sigma) - (this.y - k);
+    const bare = exp(-sigma * logZ);
+    s = s * (eta === sigma ? bare : exp(-eta * logZ)) + this.mu * bare;
+    let marginal: number;
+    if (technology.kind === 'linear') marginal = technology.grossReturn;
+    else {
+      // f′ from f: α·A·k^α/k and what is kept
+      const kept = 1 - technology.depreciation;
+      marginal = (technology.elasticity * (z - kept * k)) / k + kept;
+    }
+    return exp(log(this.delta * marginal * s) / -sigma) - (this.y - k);
   }
 
   objective(wealth: number, z: number, aspirations: ArrayLike<number>, childWeight: number): number {
