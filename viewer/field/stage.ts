@@ -175,6 +175,7 @@ export class Stage {
       if (last !== null && last.arrangement !== scene.arrangement) this.#look(REST);
       this.#glide = glides ? 0 : 1;
       this.#glideStart = glides ? performance.now() : -1;
+      this.#pulse = last !== null && last.generation !== scene.generation;
     }
     scene.arms.forEach((arm, k) => {
       const field = this.#fields[k];
@@ -408,6 +409,8 @@ export class Stage {
   #arrived = -1;
   #wasMoving = false;
   #fade = 0;
+  /** True when the last glide led to another generation: only then have statuses changed. */
+  #pulse = false;
   #frame = 0;
   #gridKey = '';
   #tintKey = '';
@@ -431,7 +434,7 @@ export class Stage {
     const [r, gr, b] = rgb(this.#tokens.ink);
     // the fewer lines, the stronger each: the tone of the whole stays
     const strength =
-      Math.min(0.3, Math.max(0.018, 260 / Math.max(1, ties) + 0.012)) * Math.min(3, this.#camera.zoom ** 0.5);
+      Math.min(0.15, Math.max(0.014, 110 / Math.max(1, ties) + 0.007)) * Math.min(2.2, this.#camera.zoom ** 0.5);
     const [pr, pg, pb] = rgb(this.#tokens.panel);
     this.#canvas.draw(
       [
@@ -458,12 +461,12 @@ export class Stage {
 
   /** Halos are strong while marks arrive and quiet afterwards. */
   #haloNow(g: number): number {
-    if (this.#glideStart >= 0) return 0.75 * g;
-    const age = this.#arrived < 0 ? 1 : Math.min(1, (performance.now() - this.#arrived) / FADE);
     // where most have changed, a circle round each would say nothing: let them go
     const many = Math.max(this.#fields[0].changed, this.#fields[1].changed);
-    const quiet = many < 0.12 ? 0.3 : many < 0.3 ? 0.12 : 0;
-    return 0.75 + (quiet - 0.75) * age;
+    const [loud, quiet] = many < 0.12 ? [0.75, 0.3] : many < 0.3 ? [0.5, 0.12] : [0.25, 0];
+    if (this.#glideStart >= 0) return this.#pulse ? loud * g : quiet;
+    const age = this.#arrived < 0 || !this.#pulse ? 1 : Math.min(1, (performance.now() - this.#arrived) / FADE);
+    return loud + (quiet - loud) * age;
   }
 
   #drawPyramid(scene: Scene, g: number): void {

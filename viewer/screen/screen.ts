@@ -150,8 +150,8 @@ export function screenTemplate(parts: ScreenParts, events: ScreenEvents): Templa
       ${stageTemplate(
         html`${armName(parts, events, 'left')}<span class="says">${parts.notes[0]}</span>`,
         html`${armName(parts, events, 'right')}<span class="says">${parts.notes[1]}</span>`,
-        parts.feet[0],
-        parts.feet[1],
+        html`<span>${parts.feet[0]}</span>`,
+        html`<span>${parts.feet[1]}</span>`,
       )}
     </section>
     <section class="strip" aria-label="Generations">${parts.strip}</section>
