@@ -127,8 +127,8 @@ describe('two-stage least squares', () => {
     const fit = iv({ ...base, endogenous: [...base.endogenous, second] });
     expect(fit.terms.map((term) => term.term)).toEqual(['(const)', 'x', 'x2', 'w']);
     const d = fit.diagnostics as Record<string, unknown>;
-    expect(d['first_stage_F1']).toBeDefined();
-    expect(d['first_stage_F2']).toBeDefined();
+    expect((d['first_stage_F1'] as { F: number }).F).toBeGreaterThan(0);
+    expect((d['first_stage_F2'] as { F: number }).F).toBeGreaterThan(0);
     expect(fit.diagnostics.cragg_donald?.F).toBeLessThan(
       Math.min((d['first_stage_F1'] as { F: number }).F, (d['first_stage_F2'] as { F: number }).F),
     );
