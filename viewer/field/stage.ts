@@ -374,7 +374,11 @@ export class Stage {
     if (this.#cameraStart >= 0) {
       const s = Math.min(1, Math.max(0, (now - this.#cameraStart) / MOVE));
       this.#camera = between(this.#cameraFrom, this.#cameraTo, ease(s));
-      if (s >= 1) this.#cameraStart = -1;
+      if (s >= 1) {
+        // exactly where it was to go, whatever rounding made of the way
+        this.#camera = this.#cameraTo;
+        this.#cameraStart = -1;
+      }
     }
     const before = performance.now();
     this.#draw();
