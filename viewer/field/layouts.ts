@@ -20,6 +20,8 @@ export class Layouts {
   readonly #arrived: () => void;
   readonly #sideways = new Map<string, Float32Array>();
   readonly #maps = new Map<string, MapLayout | null>();
+  readonly #versions = new WeakMap<Ties, number>();
+  #count = 0;
   #worker: Worker | null = null;
 
   /** @param arrived - called when a map that was asked for is there */
@@ -43,8 +45,11 @@ export class Layouts {
     return kept;
   }
 
-  /** The map, or null while it is computed. The same ties keep the same map. */
-  map(key: string, ties: Ties, cast: Cast): MapLayout | null {
+  /** The map, or null while it is computed. The same ties keep the same map; changed ties get their own. */
+  map(arm: string, ties: Ties, cast: Cast): MapLayout | null {
+    let version = this.#versions.get(ties);
+    if (version === undefined) this.#versions.set(ties, (version = ++this.#count));
+    const key = `${arm}/${version}`;
     const kept = this.#maps.get(key);
     if (kept !== undefined) return kept;
     this.#maps.set(key, null);

@@ -610,9 +610,10 @@ export class Stage {
     const rem = this.#rem;
     const circle = svg`<circle class="hover" cx=${x} cy=${y} r=${0.6 * rem}></circle>`;
     const now = arm.now;
+    const name = arm.cast.names?.[i] ?? arm.cast.id[i];
     const says = now.decided
-      ? `household ${arm.cast.id[i]}: has ${amount(now.wealth[i])}, aspires to ${amount(now.aspirations[0][i])}`
-      : `household ${arm.cast.id[i]}: has ${amount(now.wealth[i])}`;
+      ? `household ${name}: has ${amount(now.wealth[i])}, aspires to ${amount(now.aspirations[0][i])}`
+      : `household ${name}: has ${amount(now.wealth[i])}`;
     const wide = says.length * 0.52 * rem;
     const at = Math.max(wide / 2 + 6, Math.min(f.box.width - wide / 2 - 6, x));
     const above = y > 4.6 * rem;
