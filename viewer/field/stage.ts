@@ -430,7 +430,7 @@ export class Stage {
     const n = left.marks.n;
     const size =
       Math.max(1.15, Math.min(3.4 * (this.#rem / 13), 0.228 * Math.sqrt((left.box.width * left.box.height) / n))) *
-      Math.min(3, Math.sqrt(this.#camera.zoom));
+      Math.min(3, this.#camera.zoom ** (n < MANY ? 0.5 : 0.3));
     const most = Math.max(left.marks.ties, right.marks.ties);
     const ties = scene.tiesShown
       ? Math.min(most, moving ? Math.round(this.#sample) : Math.round(REST_TIES * this.#sample))
