@@ -205,6 +205,6 @@ export function legend(
         break;
     }
   }
-  if (pockets) items.push({ kind: 'tint', colour: tokens.frustrated, says: 'pocket, p < 0.05' });
+  if (pockets) items.push({ kind: 'tint', colour: tokens.frustrated, says: 'pocket, p ≤ 0.05' });
   return items;
 }
