@@ -32,7 +32,8 @@ export async function readStudy(given: string): Promise<StudyOnDisk> {
   return { file, parsed, prepared };
 }
 
-function studyFile(given: string): string {
+/** The path of a study: a file, or a built-in study by name. @throws {InputError} when it is neither */
+export function studyFile(given: string): string {
   const stat = statSync(given, { throwIfNoEntry: false });
   if (stat?.isFile()) return given;
   if (stat?.isDirectory()) {

@@ -11,6 +11,7 @@ import { basename, dirname, extname, join, resolve, sep } from 'node:path';
 import { fileURLToPath } from 'node:url';
 import type { Command } from 'commander';
 import { InputError } from '../../network/errors.js';
+import { studyFile } from './study-files.js';
 
 export interface ViewerOptions {
   /** A results folder. */
@@ -261,7 +262,10 @@ export function viewCommand(program: Command): void {
   program
     .command('view')
     .description('watch a results folder or a study in the browser')
-    .argument('[DIR or STUDY]', 'a results folder, or a study file to run in the page; without it a built-in study')
+    .argument(
+      '[DIR or STUDY]',
+      'a results folder, or a study (a file, or a built-in one by name) to run in the page; without it the first built-in',
+    )
     .option('--port <number>', 'port on 127.0.0.1 (any free one)')
     .addHelpText('after', '\nExample:\n  rungsight view results/villages-apart')
     .action(async (path: string | undefined, flags: { port?: string }) => {
@@ -275,7 +279,9 @@ export function viewCommand(program: Command): void {
         });
       let what: { dir?: string; study?: string } = {};
       if (path !== undefined)
-        what = statSync(existing(path, 'folder or study file')).isDirectory() ? { dir: path } : { study: path };
+        what = statSync(path, { throwIfNoEntry: false })?.isDirectory()
+          ? { dir: path }
+          : { study: existing(studyFile(path), 'folder or study file') };
       const viewer = await serveViewer({ ...what, port });
       console.log(`The viewer is at ${viewer.url} (Ctrl-C ends it)`);
       await new Promise<void>((done) => {
