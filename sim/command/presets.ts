@@ -73,7 +73,7 @@ function list(json: boolean): void {
   const width = Math.max(...all.map((preset) => preset.name.length));
   for (const preset of all)
     console.log(`${preset.name.padEnd(width)}  ${preset.title}\n${' '.repeat(width)}  ${preset.shows}\n`);
-  console.log('Run one:       rungsight run NAME\nTo edit one:   rungsight presets NAME');
+  console.log('Run one:       npx rungsight run NAME\nTo edit one:   npx rungsight presets NAME');
 }
 
 function write(name: string, out: string, json: boolean): void {
@@ -106,7 +106,9 @@ function write(name: string, out: string, json: boolean): void {
   const written = files.map((one) => resolve(out, one));
   if (json) console.log(JSON.stringify({ written }, null, 2));
   else
-    console.log(`Wrote ${files.map((one) => join(out, one)).join(', ')}.\nNext: rungsight run ${join(out, files[0]!)}`);
+    console.log(
+      `Wrote ${files.map((one) => join(out, one)).join(', ')}.\nNext: npx rungsight run ${join(out, files[0]!)}`,
+    );
 }
 
 /** Data files a study names, relative to it. */

@@ -75,6 +75,13 @@ async function run(given: string | undefined, options: RunOptions): Promise<void
   const facts = factsOf(disk.prepared);
   const arms = study.arms.length;
   const n = householdsOf(disk.prepared);
+  if (folder.finished) {
+    // stopped after its last file was written: only the folder's name was missing
+    if (quiet) console.log(JSON.stringify({ folder: folder.out, problems: [] }, null, 2));
+    else
+      console.log(`Results are in ${shown(folder.out)}: the run was complete, only its folder had not been renamed.`);
+    return;
+  }
   const done = folder.completeReplicates();
   const todo = Array.from({ length: study.replicates }, (_, r) => r).filter((r) => !done.includes(r));
   say(
@@ -122,7 +129,7 @@ async function open(given: string | undefined, options: RunOptions): Promise<{ d
       });
     }
     const folder = resumeRun(options.resume, { version: VERSION });
-    const disk = local(await readStudy(given ?? join(folder.partial, 'study.yaml')));
+    const disk = local(await readStudy(given ?? join(folder.finished ? folder.out : folder.partial, 'study.yaml')));
     if (studyHash(canonicalText(disk.prepared)) !== folder.manifest.study_hash) {
       throw new InputError({
         code: 'other-study',
@@ -239,7 +246,7 @@ async function simulateAll(
     throw new RunError(
       'stopped',
       `${whole} of ${study.replicates} replicates are kept in ${shown(folder.partial)}`,
-      `go on with: rungsight run --resume ${shown(folder.out)}`,
+      `go on with: npx rungsight run --resume ${shown(folder.out)}`,
     );
   }
   await pool.destroy();
@@ -277,15 +284,15 @@ function finalText(answer: Answer, out: string, seconds: number, files: readonly
     ...DESCRIBED.filter(([file]) => files.includes(file)).map(([file, what]) => `  ${file.padEnd(17)}${what}`),
     '',
     'Next:',
-    `  rungsight view ${folder}         look at it in the browser`,
-    '  rungsight presets                  the built-in studies, to edit',
+    `  npx rungsight view ${folder}         look at it in the browser`,
+    '  npx rungsight presets                  the built-in studies, to edit',
   ].join('\n');
 }
 
 /** Serves the viewer until Ctrl-C; says why not where there is no terminal. */
 async function viewAfter(out: string, quiet: boolean): Promise<void> {
   if (!process.stdout.isTTY || quiet) {
-    if (!quiet) console.log(`\nNo terminal, so the viewer is not opened. To see it: rungsight view ${shown(out)}`);
+    if (!quiet) console.log(`\nNo terminal, so the viewer is not opened. To see it: npx rungsight view ${shown(out)}`);
     return;
   }
   const { serveViewer } = await import('./view.js');

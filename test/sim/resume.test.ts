@@ -2,7 +2,7 @@
  * Runs that are stopped: killed at random moments and resumed, the folder is the same to the byte as without.
  */
 import { spawn } from 'node:child_process';
-import { existsSync, readdirSync, readFileSync, writeFileSync } from 'node:fs';
+import { existsSync, readdirSync, readFileSync, renameSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import seedrandom from 'seedrandom';
 import { describe, expect, test } from 'vitest';
@@ -113,7 +113,7 @@ describe('a stopped run', () => {
     );
     expect(result.status).toBe(1);
     expect(result.err).toContain(
-      'of 6 replicates are kept in interrupted.partial; go on with: rungsight run --resume interrupted',
+      'of 6 replicates are kept in interrupted.partial; go on with: npx rungsight run --resume interrupted',
     );
     expect(result.err).not.toContain(' at ');
     const manifest = JSON.parse(readFileSync(join(folder, 'interrupted.partial', 'manifest.json'), 'utf8')) as {
@@ -122,6 +122,14 @@ describe('a stopped run', () => {
     expect(manifest.state).toBe('partial');
     expect(rungsight(['run', '--resume', 'interrupted'], folder).status).toBe(0);
     expect(hashes(join(folder, 'interrupted'))).toEqual(hashes(join(folder, 'straight')));
+  });
+
+  test('one stopped before its last step, the renaming, needs only that', () => {
+    renameSync(join(folder, 'interrupted'), join(folder, 'named.partial'));
+    const ran = rungsight(['run', '--resume', 'named'], folder);
+    expect(ran.status).toBe(0);
+    expect(ran.out).toContain('the run was complete');
+    expect(hashes(join(folder, 'named'))).toEqual(hashes(join(folder, 'straight')));
   });
 
   test('another study cannot be resumed into it, and a whole folder is not overwritten', () => {
