@@ -276,6 +276,8 @@ const DESCRIBED: readonly [file: string, what: string][] = [
 
 function finalText(answer: Answer, out: string, seconds: number, files: readonly string[]): string {
   const folder = shown(out);
+  const view = `npx rungsight view ${folder}`;
+  const width = Math.max(view.length, 22);
   return [
     '',
     answerText(answer),
@@ -284,8 +286,8 @@ function finalText(answer: Answer, out: string, seconds: number, files: readonly
     ...DESCRIBED.filter(([file]) => files.includes(file)).map(([file, what]) => `  ${file.padEnd(17)}${what}`),
     '',
     'Next:',
-    `  npx rungsight view ${folder}         look at it in the browser`,
-    '  npx rungsight presets                  the built-in studies, to edit',
+    `  ${view.padEnd(width)}   look at it in the browser`,
+    `  ${'npx rungsight presets'.padEnd(width)}   the built-in studies, to edit`,
   ].join('\n');
 }
 
