@@ -32,6 +32,8 @@ export interface FrameLook {
   readonly size: number;
   /** Strength of halos, 0 … 1. */
   readonly halo: number;
+  /** Share of the households drawn, 0 … 1: a fair sample while the camera moves. */
+  readonly share: number;
   /** Ties drawn in each field at most. */
   readonly ties: number;
   readonly ink: Float32Array;
@@ -121,6 +123,7 @@ export class FieldCanvas {
         look.size,
         r,
         look.halo,
+        look.share,
         look.ties,
         look.ink,
         look.paper,

@@ -6,6 +6,7 @@ import type { Cast, Snapshot } from '../data/source.js';
 import { CAUSE } from '../data/source.js';
 import { mix, rgb, type Tokens } from '../screen/tokens.js';
 import type { Look } from './marks.js';
+import { fairStep } from './sample.js';
 
 export const COLOURINGS = ['status', 'wealth rank', 'aspiration gap', 'growth', 'group', 'cause', 'treated'] as const;
 export type Colouring = (typeof COLOURINGS)[number];
@@ -139,12 +140,19 @@ export function dress(
     shape[4 * i + 3] = changed ? 255 : 0;
     if (changed) changes++;
   }
-  // open rings last: the frustrated are what the eye looks for
-  const order = new Uint32Array(n);
-  let at = 0;
-  for (let i = 0; i < n; i++) if (shape[4 * i + 1] === 0) order[at++] = i;
-  for (let i = 0; i < n; i++) if (shape[4 * i + 1] !== 0) order[at++] = i;
-  return { colourFrom, colourTo, shape, order, changed: changes / Math.max(1, n) };
+  // open rings apart, to lie on top: the frustrated are what the eye looks for
+  let open = 0;
+  for (let i = 0; i < n; i++) if (shape[4 * i + 1] !== 0) open++;
+  const discs = new Uint32Array(n - open);
+  const rings = new Uint32Array(open);
+  const step = fairStep(n);
+  let d = 0;
+  let r = 0;
+  for (let k = 0, i = 0; k < n; k++, i = (i + step) % n) {
+    if (shape[4 * i + 1] === 0) discs[d++] = i;
+    else rings[r++] = i;
+  }
+  return { colourFrom, colourTo, shape, discs, rings, changed: changes / Math.max(1, n) };
 }
 
 /** The legend of a colouring: which mark means what, always with the status shapes. */

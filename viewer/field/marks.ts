@@ -6,6 +6,7 @@
  */
 import { Buffer, BufferUsage, Container, Geometry, GlProgram, Mesh, Shader, State, UniformGroup } from 'pixi.js';
 import type { Ties } from '../../network/graph.js';
+import { fairStep } from './sample.js';
 import { lineFragment, lineVertex, pointFragment, pointVertex } from './shaders.js';
 
 /** Appearance of every household before and after a glide. */
@@ -15,8 +16,10 @@ export interface Look {
   readonly colourTo: Uint8Array;
   /** 4 n bytes: hole before, hole after (255 = ring), size (51 = plain), halo. */
   readonly shape: Uint8Array;
-  /** Order of drawing, n household indices, last on top. */
-  readonly order: Uint32Array;
+  /** Indices of the households drawn as discs, in an order such that any first part is a fair sample of them. */
+  readonly discs: Uint32Array;
+  /** The others, open rings drawn on top, in such an order too. */
+  readonly rings: Uint32Array;
   /** Share of households that carry a halo. */
   readonly changed: number;
 }
@@ -41,6 +44,14 @@ function uniforms(extra: Record<string, { value: number | Float32Array; type: 'f
   });
 }
 
+/** Marks of one shape: an index buffer on the households' attributes. */
+interface Layer {
+  readonly index: Buffer;
+  readonly geometry: Geometry;
+  readonly mesh: Mesh<Geometry, Shader>;
+  count: number;
+}
+
 function blended(): State {
   const state = State.for2d();
   state.depthTest = false;
@@ -55,10 +66,9 @@ export class FieldMarks {
   #colourFrom: Buffer;
   #colourTo: Buffer;
   #shape: Buffer;
-  #order: Buffer;
+  #layers: readonly Layer[];
   #points: UniformGroup;
   #lines: UniformGroup;
-  #pointMesh: Mesh<Geometry, Shader>;
   #lineMesh: Mesh<Geometry, Shader> | null = null;
   #lineGeometry: Geometry | null = null;
   #ties = 0;
@@ -70,7 +80,23 @@ export class FieldMarks {
     this.#colourFrom = new Buffer({ data: new Uint8Array(4 * n), usage: vertex });
     this.#colourTo = new Buffer({ data: new Uint8Array(4 * n), usage: vertex });
     this.#shape = new Buffer({ data: new Uint8Array(4 * n), usage: vertex });
-    this.#order = new Buffer({ data: new Uint32Array(n), usage: BufferUsage.INDEX | BufferUsage.COPY_DST });
+    this.#points = uniforms({
+      uSize: { value: 3, type: 'f32' },
+      uDensity: { value: 1, type: 'f32' },
+      uHalo: { value: 0, type: 'f32' },
+      uPaper: { value: new Float32Array(4), type: 'vec4<f32>' },
+    });
+    this.#lines = uniforms({ uInk: { value: new Float32Array(4), type: 'vec4<f32>' } });
+    const shader = new Shader({
+      glProgram: GlProgram.from({ vertex: pointVertex, fragment: pointFragment, name: 'households' }),
+      resources: { marks: this.#points },
+    });
+    // discs below, open rings on top
+    this.#layers = [0, 1].map(() => this.#layer(shader));
+  }
+
+  #layer(shader: Shader): Layer {
+    const index = new Buffer({ data: new Uint32Array(this.n), usage: BufferUsage.INDEX | BufferUsage.COPY_DST });
     const geometry = new Geometry({
       topology: 'point-list',
       attributes: {
@@ -80,24 +106,11 @@ export class FieldMarks {
         aColourTo: { buffer: this.#colourTo, format: RGBA, stride: 4, offset: 0 },
         aShape: { buffer: this.#shape, format: RGBA, stride: 4, offset: 0 },
       },
-      indexBuffer: this.#order,
+      indexBuffer: index,
     });
-    this.#points = uniforms({
-      uSize: { value: 3, type: 'f32' },
-      uDensity: { value: 1, type: 'f32' },
-      uHalo: { value: 0, type: 'f32' },
-      uPaper: { value: new Float32Array(4), type: 'vec4<f32>' },
-    });
-    this.#lines = uniforms({ uInk: { value: new Float32Array(4), type: 'vec4<f32>' } });
-    this.#pointMesh = new Mesh<Geometry, Shader>({
-      geometry,
-      shader: new Shader({
-        glProgram: GlProgram.from({ vertex: pointVertex, fragment: pointFragment, name: 'households' }),
-        resources: { marks: this.#points },
-      }),
-      state: blended(),
-    });
-    this.container.addChild(this.#pointMesh);
+    const mesh = new Mesh<Geometry, Shader>({ geometry, shader, state: blended() });
+    this.container.addChild(mesh);
+    return { index, geometry, mesh, count: 0 };
   }
 
   /** Number of ties drawn when all are drawn. */
@@ -126,11 +139,15 @@ export class FieldMarks {
     (this.#colourFrom.data as Uint8Array).set(look.colourFrom);
     (this.#colourTo.data as Uint8Array).set(look.colourTo);
     (this.#shape.data as Uint8Array).set(look.shape);
-    (this.#order.data as Uint32Array).set(look.order);
+    this.#layers.forEach((layer, k) => {
+      const listed = k === 0 ? look.discs : look.rings;
+      (layer.index.data as Uint32Array).set(listed);
+      layer.index.update();
+      layer.count = listed.length;
+    });
     this.#colourFrom.update();
     this.#colourTo.update();
     this.#shape.update();
-    this.#order.update();
   }
 
   /**
@@ -150,7 +167,7 @@ export class FieldMarks {
       }
     }
     const index = new Uint32Array(2 * m);
-    const step = coprime(m);
+    const step = fairStep(m);
     for (let k = 0, from = 0; k < m; k++, from = (from + step) % m) {
       index[2 * k] = listed[2 * from];
       index[2 * k + 1] = listed[2 * from + 1];
@@ -185,6 +202,7 @@ export class FieldMarks {
   /**
    * Sets what a render needs.
    *
+   * @param share - share of the households drawn, a fair sample of discs and of rings; above 0, at most 1
    * @param drawnTies - how many ties to draw; 0 draws none
    * @param ink - RGBA of ties, 0 … 1
    * @param paper - RGB of the field's ground, in the holes of rings
@@ -194,6 +212,7 @@ export class FieldMarks {
     size: number,
     resolution: number,
     halo: number,
+    share: number,
     drawnTies: number,
     ink: Float32Array,
     paper: Float32Array,
@@ -213,6 +232,11 @@ export class FieldMarks {
     ((this.#lines.uniforms as Record<string, number | Float32Array>).uInk as Float32Array).set(ink);
     this.#points.update();
     this.#lines.update();
+    for (const { geometry, mesh, count } of this.#layers) {
+      // a count of 0 would draw the whole buffer
+      mesh.visible = count > 0;
+      geometry.indexCount = Math.ceil(count * Math.min(1, share));
+    }
     if (this.#lineMesh !== null && this.#lineGeometry !== null) {
       this.#lineMesh.visible = drawnTies > 0;
       this.#lineGeometry.indexCount = 2 * Math.min(this.#ties, drawnTies);
@@ -221,18 +245,11 @@ export class FieldMarks {
 
   /** Uploads every buffer anew, after the context was lost. */
   renew(): void {
-    for (const b of [this.#positions, this.#colourFrom, this.#colourTo, this.#shape, this.#order]) b.update();
+    for (const b of [this.#positions, this.#colourFrom, this.#colourTo, this.#shape]) b.update();
+    for (const { index } of this.#layers) index.update();
   }
 
   destroy(): void {
     this.container.destroy({ children: true });
   }
-}
-
-/** A step near the golden section of m that shares no factor with it. */
-function coprime(m: number): number {
-  let step = Math.max(1, Math.round(m * 0.6180339887498949));
-  const gcd = (a: number, b: number): number => (b === 0 ? a : gcd(b, a % b));
-  while (gcd(step, m) !== 1) step++;
-  return step;
 }

@@ -46,6 +46,12 @@ const REST_TIES = 8;
 const SETTLE = 260;
 /** Households a field from which halos are quiet at once: every further frame would keep the reader waiting. */
 const MANY = 20000;
+/** Households drawn in each field while the camera moves, at the start and at least. */
+const CROWD = 12000;
+const FEWEST = 6000;
+/** Milliseconds between two frames above which fewer households are drawn while the camera moves, and below which more. */
+const SLOW = 60;
+const QUICK = 19;
 /** Milliseconds a frame may take while something moves, before fewer ties are drawn. */
 const BUDGET = 26;
 
@@ -75,7 +81,9 @@ export class Stage {
   #hover = -1;
   #hoverField = 0;
   #moving = 0;
+  #settling = 0;
   #sample = 6000;
+  #crowd = CROWD;
   #raf = 0;
   #rem = 13;
 
@@ -256,7 +264,7 @@ export class Stage {
 
   /** Draws at once: for measuring. */
   drawNow(): void {
-    this.#draw();
+    this.#draw(this.busy || performance.now() < this.#moving);
   }
 
   /**
@@ -269,13 +277,15 @@ export class Stage {
     this.#glide = 1;
     this.#glideStart = -1;
     this.#arrived = -1;
+    if (this.#cameraStart >= 0) this.#camera = this.#cameraTo;
+    this.#cameraStart = -1;
     this.#canvas.resize(width, height, resolution);
-    this.#draw();
+    this.#draw(false);
     try {
       return await take();
     } finally {
       this.#canvas.resize(width, height);
-      this.#draw();
+      this.#draw(false);
     }
   }
 
@@ -381,18 +391,25 @@ export class Stage {
       }
     }
     const before = performance.now();
-    this.#draw();
     const moving = this.busy || now < this.#moving;
-    if (moving && this.#scene?.tiesShown === true) {
+    this.#draw(moving);
+    if (this.busy && this.#lastFrame > 0) {
       // a frame's cost arrives with the next frame: steer by the time between two of them
-      const spent = performance.now() - before;
-      const frameTime = Math.max(spent, this.#lastFrame > 0 ? Math.min(200, now - this.#lastFrame) : 0);
-      if (frameTime > BUDGET) this.#sample = Math.max(400, this.#sample * Math.max(0.5, BUDGET / frameTime));
-      else if (frameTime < 18) this.#sample = Math.min(200000, this.#sample * 1.15);
+      const frameTime = Math.max(performance.now() - before, Math.min(200, now - this.#lastFrame));
+      if (this.#scene?.tiesShown === true) {
+        if (frameTime > BUDGET) this.#sample = Math.max(400, this.#sample * Math.max(0.5, BUDGET / frameTime));
+        else if (frameTime < 18) this.#sample = Math.min(200000, this.#sample * 1.15);
+      }
+      // between slow and quick nothing changes: a crowd that comes and goes would look like news
+      const n = this.#fields[0].marks?.n ?? 0;
+      if (frameTime < QUICK) this.#crowd = Math.max(CROWD, Math.min(n, this.#crowd * 1.1));
+      else if (frameTime > SLOW && this.#glideStart < 0) {
+        this.#crowd = Math.max(FEWEST, this.#crowd * Math.max(0.7, SLOW / frameTime));
+      }
     }
-    this.#lastFrame = moving ? now : 0;
-    if (moving) this.#ask();
-    else if (this.#wasMoving) this.#ask();
+    this.#lastFrame = this.busy ? now : 0;
+    // under the reader's hand the next movement asks for the next frame: frames in between would only queue before it
+    if (this.busy) this.#ask();
     else if (this.#arrived >= 0) {
       if (now - this.#arrived >= FADE) {
         this.#arrived = -1;
@@ -405,13 +422,11 @@ export class Stage {
         }, 110);
       }
     }
-    this.#wasMoving = moving;
   }
 
   #lastFrame = 0;
   /** When the last glide ended; −1 before any. */
   #arrived = -1;
-  #wasMoving = false;
   #fade = 0;
   /** True when the last glide led to another generation: only then have statuses changed. */
   #pulse = false;
@@ -420,17 +435,19 @@ export class Stage {
   #tintKey = '';
   #tinted: readonly [unknown, unknown] = [null, null];
 
-  #draw(): void {
+  /** @param moving - draw no more than a sample that keeps pace; at rest all marks are drawn */
+  #draw(moving: boolean): void {
     const scene = this.#scene;
     if (scene === null) return;
     const [left, right] = this.#fields;
     if (left.marks === null || right.marks === null) return;
     const g = ease(this.#glide);
-    const moving = this.busy || performance.now() < this.#moving;
     const n = left.marks.n;
     const size =
       Math.max(1.15, Math.min(3.4 * (this.#rem / 13), 0.228 * Math.sqrt((left.box.width * left.box.height) / n))) *
       Math.min(3, this.#camera.zoom ** (n < MANY ? 0.5 : 0.3));
+    // a glide carries every mark to its place; a camera on its way takes a fair sample along, each a little larger
+    const share = moving && this.#glideStart < 0 ? Math.min(1, this.#crowd / n) : 1;
     const most = Math.max(left.marks.ties, right.marks.ties);
     const ties = scene.tiesShown
       ? Math.min(most, moving ? Math.round(this.#sample) : Math.round(REST_TIES * this.#sample))
@@ -448,7 +465,8 @@ export class Stage {
       {
         camera: this.#camera,
         glide: g,
-        size,
+        size: size * Math.min(1.6, share ** -0.5),
+        share,
         halo: this.#haloNow(g),
         ties,
         ink: Float32Array.of(r / 255, gr / 255, b / 255, strength),
@@ -711,6 +729,11 @@ export class Stage {
 
   #keepMoving(): void {
     this.#moving = performance.now() + SETTLE;
+    window.clearTimeout(this.#settling);
+    this.#settling = window.setTimeout(() => {
+      this.#moving = 0;
+      this.#ask();
+    }, SETTLE);
     this.#ask();
   }
 
