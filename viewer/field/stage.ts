@@ -474,7 +474,7 @@ export class Stage {
       },
     );
     this.#grid(scene);
-    this.#tint(scene);
+    this.#tint(scene, moving);
     this.#overlay(scene);
     // a third of the frames do for bars: painting them costs as much as the marks
     this.#frame++;
@@ -543,9 +543,14 @@ export class Stage {
     );
   }
 
-  /** Pockets' tints: gone while marks glide, since they belong to where the marks arrive. */
-  #tint(scene: Scene): void {
-    this.#tints.classList.toggle('away', this.#glideStart >= 0);
+  /**
+   * Pockets' tints: gone while marks glide, since they belong to where the marks arrive, and while the camera moves over a
+   * large study, whose thousands of members would be painted anew at every size.
+   */
+  #tint(scene: Scene, moving: boolean): void {
+    const away = this.#glideStart >= 0 || (moving && (this.#fields[0].marks?.n ?? 0) >= MANY);
+    this.#tints.classList.toggle('away', away);
+    if (away) return;
     const { zoom, x, y } = this.#camera;
     const key = `${zoom}/${x}/${y}/${scene.pocket.join()}`;
     if (key === this.#tintKey && this.#fields.every((f, k) => f.sleeves === this.#tinted[k])) return;
